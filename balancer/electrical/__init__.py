@@ -1,0 +1,1 @@
+"""What flows: supplies, scenarios, leg amps and neutral current."""
