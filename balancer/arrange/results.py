@@ -75,8 +75,8 @@ class Plan:
     """An arrangement, and how good it is proven to be.
 
     `as_left` holds every circuit that has a place; `removed_spares` are spare breakers that had to make room.
-    `optimum_peak_neutral_a` is the lowest peak neutral found before `within_a` gave any away, `bound_peak_neutral_a` the
-    proven lower bound over all allowed arrangements.
+    `optimum_peak_neutral_a` is the lowest peak neutral found before `within_a` gave any away, `bound_peak_neutral_a`
+    the proven lower bound over all allowed arrangements.
     """
 
     installation: Installation
@@ -124,7 +124,7 @@ class Tradeoff:
 
     points: tuple[TradeoffPoint, ...]
     flat_from: int | None
-    """Landings from which further ones buy less than 0.05 A of the first objective; None where the curve still falls."""
+    """Landings from which further ones buy under 0.05 A of the first objective; None where the curve still falls."""
     stop: Stop = Stop.NONE
 
 
