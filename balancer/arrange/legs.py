@@ -1,0 +1,282 @@
+"""The leg problem: which leg every unit is on, as plain arrays.
+
+Neutral, imbalance and heavy leg depend on legs only. Every free unit has a reference pattern (the one as found, where it
+is landed) and a *choice* for every other pattern of signs that one of its placements gives. A leg answer is a 0/1 vector
+over the choices with at most one choice a unit. In every row (a scenario in one combination of what is not known) a
+quantity is the magnitude of ``offset + effects @ answer``.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from functools import cached_property
+
+import numpy as np
+from numpy.typing import NDArray
+
+from balancer.arrange.results import ObjectiveName
+from balancer.arrange.seats import Placement, Unit
+from balancer.electrical.phasors import PanelCurrents
+from balancer.electrical.scenarios import Scenarios
+from balancer.panel import Installation, Leg, Panel, SupplySystem
+
+FloatMatrix = NDArray[np.float64]
+ComplexMatrix = NDArray[np.complex128]
+Answer = NDArray[np.int8]
+"""Shape (choices,): 1 where the unit takes that choice instead of its reference pattern."""
+
+_NO_CURRENT_A = 1e-9
+
+
+@dataclass(frozen=True, eq=False)
+class Rows:
+    """One quantity in every row: magnitude of ``offset + effects @ answer`` [A].
+
+    `offset` has shape (rows,), `effects` (rows, choices); both are complex, or real where the quantity is a projection.
+    """
+
+    name: ObjectiveName
+    offset: ComplexMatrix
+    effects: ComplexMatrix
+    is_real: bool
+
+    def values(self, answer: Answer) -> FloatMatrix:
+        """Magnitude [A] in every row."""
+        return np.abs(self.offset + self.effects @ answer.astype(float))
+
+    def peak(self, answer: Answer) -> float:
+        """Highest magnitude [A] over all rows."""
+        return float(self.values(answer).max(initial=0.0))
+
+    @property
+    def is_constant(self) -> bool:
+        """Whether no choice changes it."""
+        return not np.abs(self.effects).max(initial=0.0) > _NO_CURRENT_A
+
+
+@dataclass(frozen=True, eq=False)
+class Counter:
+    """A whole-number constraint ``base + costs @ answer <= cap`` that every seatable leg answer keeps."""
+
+    base: int
+    costs: NDArray[np.int64]
+    cap: int
+    name: str
+
+    def value(self, answer: Answer) -> int:
+        """Left-hand side for an answer."""
+        return self.base + int(self.costs @ answer.astype(np.int64))
+
+
+@dataclass(frozen=True)
+class Choice:
+    """A free unit and the pattern that it takes instead of its reference pattern."""
+
+    unit: int
+    signs: tuple[int, ...]
+
+
+def patterns(unit: Unit) -> tuple[tuple[int, ...], ...]:
+    """Give the sign patterns of a unit's placements, the reference (first placement's) first."""
+    return tuple(dict.fromkeys(placement.signs for placement in unit.placements))
+
+
+@dataclass(frozen=True, eq=False)
+class LegProblem:
+    """Units, choices and rows of one installation under one set of scenarios."""
+
+    installation: Installation
+    units: tuple[Unit, ...]
+    choices: tuple[Choice, ...]
+    cases: tuple[_CaseRows, ...]
+    counters: tuple[Counter, ...]
+    effort: Counter
+    """Lower bound of a leg answer's effort, in thousandths of a landing; its cap means nothing."""
+    landings: Counter
+    """Lower bound of a leg answer's landings changed; its cap means nothing."""
+
+    @cached_property
+    def groups(self) -> tuple[tuple[int, ...], ...]:
+        """Choices of every free unit, by index, in the units' order."""
+        grouped: dict[int, list[int]] = {}
+        for index, choice in enumerate(self.choices):
+            grouped.setdefault(choice.unit, []).append(index)
+        return tuple(tuple(group) for group in grouped.values())
+
+    @cached_property
+    def neutral(self) -> Rows:
+        """The neutral current."""
+        parts = [
+            (
+                case.neutral_sum * case.total + case.neutral_difference * case.difference,
+                case.neutral_difference * case.effects,
+            )
+            for case in self.cases
+        ]
+        return _stacked(ObjectiveName.NEUTRAL, parts, is_real=False)
+
+    @cached_property
+    def heavy_leg(self) -> Rows:
+        """Both legs, one below the other."""
+        parts = [
+            ((case.total + sign * case.difference) / 2.0, sign * case.effects / 2.0)
+            for case in self.cases
+            for sign in (1.0, -1.0)
+        ]
+        return _stacked(ObjectiveName.HEAVY_LEG, parts, is_real=False)
+
+    @cached_property
+    def imbalance(self) -> Rows:
+        """The difference of the legs, projected on the direction of their sum: an upper bound of the true difference."""
+        parts = []
+        for case in self.cases:
+            magnitude = np.abs(case.total)
+            running = magnitude > _NO_CURRENT_A
+            direction = np.conj(case.total[running] / magnitude[running])
+            offset = (case.difference[running] * direction).real
+            effects = (case.effects[running] * direction[:, None]).real
+            parts.append((offset.astype(complex), effects.astype(complex)))
+        return _stacked(ObjectiveName.IMBALANCE, parts, is_real=True)
+
+    @cached_property
+    def does_imbalance_repeat_neutral(self) -> bool:
+        """Whether equal power factors make the projected imbalance and the neutral the same number."""
+        if self.installation.panel.supply.system is not SupplySystem.SPLIT:
+            return False
+        for case in self.cases:
+            total = np.conj(case.total)
+            across = np.abs((case.difference * total).imag).max(initial=0.0)
+            across = max(across, np.abs((case.effects * total[:, None]).imag).max(initial=0.0))
+            if across > _NO_CURRENT_A * max(1.0, float(np.abs(total).max(initial=0.0))):
+                return False
+            if np.any((np.abs(total) <= _NO_CURRENT_A) & (np.abs(case.difference) > _NO_CURRENT_A)):
+                return False
+        return True
+
+    def rows(self, name: ObjectiveName) -> Rows:
+        """Give the rows of an amps objective by its name."""
+        by_name = {
+            ObjectiveName.NEUTRAL: self.neutral,
+            ObjectiveName.HEAVY_LEG: self.heavy_leg,
+            ObjectiveName.IMBALANCE: self.imbalance,
+        }
+        return by_name[name]
+
+    def mean_neutral(self, answer: Answer) -> float:
+        """Mean neutral [A] over the scenarios, each by its worst case, intervals weighted equally."""
+        values = self.neutral.values(answer).reshape(len(self.cases), -1)
+        return float(values.max(axis=0).mean())
+
+    def signs(self, answer: Answer) -> tuple[tuple[int, ...], ...]:
+        """Sign pattern of every unit under an answer."""
+        chosen = {choice.unit: choice.signs for choice, taken in zip(self.choices, answer, strict=True) if taken}
+        return tuple(chosen.get(index, patterns(unit)[0]) for index, unit in enumerate(self.units))
+
+    def answer_of(self, signs: Sequence[tuple[int, ...]]) -> Answer:
+        """Answer that gives every unit a pattern of signs."""
+        return np.array([signs[choice.unit] == choice.signs for choice in self.choices], dtype=np.int8)
+
+
+@dataclass(frozen=True, eq=False)
+class _CaseRows:
+    neutral_sum: complex
+    neutral_difference: complex
+    total: ComplexMatrix
+    difference: ComplexMatrix
+    effects: ComplexMatrix
+
+
+def _stacked(name: ObjectiveName, parts: list[tuple[ComplexMatrix, ComplexMatrix]], *, is_real: bool) -> Rows:
+    offset = np.concatenate([part[0] for part in parts])
+    effects = np.concatenate([part[1] for part in parts])
+    return Rows(name, offset, effects, is_real)
+
+
+def build_leg_problem(installation: Installation, scenarios: Scenarios, units: tuple[Unit, ...]) -> LegProblem:
+    """Set up the leg problem of units that each have at least one placement."""
+    currents = PanelCurrents(installation, scenarios)
+    columns = {circuit.label: index for index, circuit in enumerate(installation.circuits)}
+    phasors = currents.neutral_phasors()
+    choices = tuple(Choice(index, signs) for index, unit in enumerate(units) for signs in patterns(unit)[1:])
+    effects = np.zeros((len(scenarios), len(choices)), dtype=complex)
+    for position, choice in enumerate(choices):
+        unit = units[choice.unit]
+        reference = patterns(unit)[0]
+        for circuit, new, old in zip(unit.circuits, choice.signs, reference, strict=True):
+            effects[:, position] += (new - old) * phasors[:, columns[circuit.label]]
+    reference_arrangement = {label: landing for unit in units for label, landing in unit.placements[0].landings}
+    cases = tuple(
+        _CaseRows(
+            case.factors.neutral_sum,
+            case.factors.neutral_difference,
+            np.asarray(case.sum_phasor_a, dtype=complex),
+            np.asarray(case.difference_phasor_a, dtype=complex),
+            effects,
+        )
+        for case in currents.cases(reference_arrangement)
+    )
+    return LegProblem(
+        installation,
+        units,
+        choices,
+        cases,
+        _seat_counters(installation.panel, units, choices),
+        _cost_counter(units, choices, "effort"),
+        _cost_counter(units, choices, "landings_changed"),
+    )
+
+
+def _with_pattern(unit: Unit, signs: tuple[int, ...]) -> list[Placement]:
+    return [placement for placement in unit.placements if placement.signs == signs]
+
+
+def _cost_counter(units: Sequence[Unit], choices: Sequence[Choice], attribute: str) -> Counter:
+    def least(unit: Unit, signs: tuple[int, ...]) -> int:
+        return int(min(getattr(placement, attribute) for placement in _with_pattern(unit, signs)))
+
+    # A spare costs next to nothing to move: its own small costs are the seat assignment's business.
+    references = [0 if unit.is_optional else least(unit, patterns(unit)[0]) for unit in units]
+    costs = [least(units[c.unit], c.signs) - references[c.unit] for c in choices]
+    total = sum(references)
+    return Counter(total, np.array(costs, dtype=np.int64), np.iinfo(np.int64).max, attribute)
+
+
+def _seat_counters(panel: Panel, units: Sequence[Unit], choices: Sequence[Choice]) -> tuple[Counter, ...]:
+    """Count spaces per leg: what the units confined to a set of spaces fill there must not exceed what it has.
+
+    Only conditions that every seatable answer keeps; the exact seat assignment has the last word.
+    """
+    needed = [index for index, unit in enumerate(units) if not unit.is_optional]
+    homes = {index: frozenset(s for p in units[index].placements for s in p.spaces) for index in needed}
+    counters = []
+    for spaces in dict.fromkeys(homes.values()):
+        members = [index for index in needed if homes[index] <= spaces]
+        for leg in Leg:
+            cap = sum(panel.leg(space) is leg for space in spaces)
+            counter = _seat_counter(panel, units, choices, members, (leg, cap))
+            # One that no answer can break is left out.
+            if counter.base + int(np.maximum(counter.costs, 0).sum()) > cap:
+                counters.append(counter)
+    return tuple(counters)
+
+
+def _seat_counter(
+    panel: Panel,
+    units: Sequence[Unit],
+    choices: Sequence[Choice],
+    members: Sequence[int],
+    limit: tuple[Leg, int],
+) -> Counter:
+    leg, cap = limit
+
+    def least(unit: Unit, signs: tuple[int, ...]) -> int:
+        return min(sum(panel.leg(s) is leg for s in p.spaces) for p in _with_pattern(unit, signs))
+
+    inside = frozenset(members)
+    references = {index: least(units[index], patterns(units[index])[0]) for index in members}
+    costs = [
+        least(units[choice.unit], choice.signs) - references[choice.unit] if choice.unit in inside else 0
+        for choice in choices
+    ]
+    return Counter(sum(references.values()), np.array(costs, dtype=np.int64), cap, f"spaces on leg {leg}")
