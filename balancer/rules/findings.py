@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterable
 from dataclasses import dataclass
 from enum import StrEnum
 
@@ -26,3 +27,19 @@ class Finding:
     circuits: tuple[str, ...]
     message: str
     citation: str = ""
+
+
+def errors_of(findings: Iterable[Finding]) -> tuple[Finding, ...]:
+    """Pick the error-level findings, in their order."""
+    return tuple(finding for finding in findings if finding.severity is Severity.ERROR)
+
+
+def new_errors(before: Iterable[Finding], after: Iterable[Finding]) -> tuple[Finding, ...]:
+    """Pick the errors of `after` whose rule did not strike the same circuits in `before`."""
+    known = {_identity(finding) for finding in errors_of(before)}
+    return tuple(finding for finding in errors_of(after) if _identity(finding) not in known)
+
+
+def _identity(finding: Finding) -> tuple[str, frozenset[str]]:
+    # A pair turned over is still the same pair, so the order of the circuits says nothing.
+    return finding.rule, frozenset(finding.circuits)

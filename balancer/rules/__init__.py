@@ -1,0 +1,15 @@
+"""What is wrong or dangerous in a panel, by article and edition."""
+
+from balancer.rules.ampacity import conductor_limit_a
+from balancer.rules.findings import Finding, Severity, errors_of, new_errors
+from balancer.rules.registry import RULES, check_installation
+
+__all__ = [
+    "RULES",
+    "Finding",
+    "Severity",
+    "check_installation",
+    "conductor_limit_a",
+    "errors_of",
+    "new_errors",
+]
