@@ -196,7 +196,7 @@ def largest_possible_neutral(installation: Installation, arrangement: Mapping[st
         for circuit in installation.circuits:
             landing = arrangement.get(circuit.label, ())
             phasor = circuit.load.neutral_a * circuit.load.neutral_pf.unit_phasor
-            if not landing or phasor == 0:
+            if not landing or phasor == 0 or not circuit.carries_load:
                 continue
             leg = neutral_leg(panel, circuit, landing)
             legs = (Leg.A, Leg.B) if leg is None else (leg,)

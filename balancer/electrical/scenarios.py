@@ -36,6 +36,8 @@ class Scenarios:
         All figures are averages over an interval or an hour, none of them moments.
     notes
         What the report must say about where the figures come from.
+    average_rows
+        Which scenarios are averages, where some are and some are not; None otherwise.
     """
 
     kind: ScenarioKind
@@ -44,7 +46,25 @@ class Scenarios:
     line_a: FloatArray
     are_averages: bool = False
     notes: tuple[str, ...] = ()
+    average_rows: NDArray[np.bool_] | None = None
 
     def __len__(self) -> int:
         """Count the scenarios."""
         return len(self.names)
+
+
+def averages_only(scenarios: Scenarios) -> Scenarios | None:
+    """Keep the scenarios that are averages over an hour or an interval; None where there are none."""
+    if scenarios.are_averages:
+        return scenarios
+    if scenarios.average_rows is None or not scenarios.average_rows.any():
+        return None
+    rows = np.flatnonzero(scenarios.average_rows)
+    return Scenarios(
+        kind=scenarios.kind,
+        names=tuple(scenarios.names[int(row)] for row in rows),
+        neutral_a=scenarios.neutral_a[rows],
+        line_a=scenarios.line_a[rows],
+        are_averages=True,
+        notes=scenarios.notes,
+    )

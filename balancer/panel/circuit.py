@@ -146,6 +146,11 @@ class Circuit:
         return bool(self.landing)
 
     @property
+    def carries_load(self) -> bool:
+        """Whether it counts as a load when planning: loads and feeders do, spares and devices do not."""
+        return self.role in (Role.LOAD, Role.FEEDER)
+
+    @property
     def hot_conductors(self) -> int:
         """Hot conductors that are landed with it; a spare breaker has none."""
         return 0 if self.role is Role.SPARE else self.poles
