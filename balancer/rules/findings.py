@@ -29,6 +29,13 @@ class Finding:
     citation: str = ""
 
 
+CODE_NOTE = (
+    "Articles are those of the NEC (NFPA 70). Editions differ, and what is marked as from memory was not read in print: "
+    "the code in force where you work, the authority having jurisdiction and a licensed electrician decide."
+)
+"""What a report of findings says once, below them."""
+
+
 def errors_of(findings: Iterable[Finding]) -> tuple[Finding, ...]:
     """Pick the error-level findings, in their order."""
     return tuple(finding for finding in findings if finding.severity is Severity.ERROR)

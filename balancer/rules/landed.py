@@ -73,13 +73,13 @@ class LandedPanel:
         return join_words([self.name(circuit) for circuit in circuits])
 
 
-def group_by(circuits: Iterable[Circuit], key: Callable[[Circuit], str]) -> dict[str, tuple[Circuit, ...]]:
-    """Collect circuits that carry the same label in a column; blank ones are left aside."""
-    groups: dict[str, tuple[Circuit, ...]] = {}
+def groups_by(circuits: Iterable[Circuit], label: Callable[[Circuit], str]) -> tuple[tuple[Circuit, ...], ...]:
+    """Collect circuits that carry the same label in a column, whatever its case; blank ones are left aside."""
+    groups: dict[str, list[Circuit]] = {}
     for circuit in circuits:
-        if key(circuit):
-            groups[key(circuit)] = (*groups.get(key(circuit), ()), circuit)
-    return groups
+        if label(circuit):
+            groups.setdefault(label(circuit).casefold(), []).append(circuit)
+    return tuple(tuple(group) for group in groups.values())
 
 
 def join_words(words: list[str]) -> str:

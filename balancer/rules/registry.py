@@ -5,11 +5,28 @@ from __future__ import annotations
 from collections.abc import Mapping
 
 from balancer.panel import Installation, Landing
+from balancer.rules import (
+    circuit_directory,
+    conductors,
+    handles,
+    in_phase,
+    loading,
+    panelboard,
+    shared_neutrals,
+)
 from balancer.rules.findings import Finding, Severity
 from balancer.rules.landed import LandedPanel
 from balancer.rules.rule import Rule
 
-RULES: tuple[Rule, ...] = ()
+RULES: tuple[Rule, ...] = (
+    *shared_neutrals.RULES,
+    *in_phase.RULES,
+    *handles.RULES,
+    *conductors.RULES,
+    *loading.RULES,
+    *panelboard.RULES,
+    *circuit_directory.RULES,
+)
 
 _GRAVEST_FIRST = (Severity.ERROR, Severity.WARNING, Severity.NOTICE)
 
