@@ -20,4 +20,4 @@ def _no_wording(landed: LandedPanel) -> Iterator[Observation]:
         yield Observation(blank, message)
 
 
-RULES = (Rule("directory-wording-missing", Severity.NOTICE, "NEC 2023, 408.4(A)", _no_wording),)
+DIRECTORY_RULES = (Rule("directory-wording-missing", Severity.NOTICE, "NEC 2023, 408.4(A)", _no_wording),)

@@ -30,8 +30,8 @@ class Finding:
 
 
 CODE_NOTE = (
-    "Articles are those of the NEC (NFPA 70). Editions differ, and what is marked as from memory was not read in print: "
-    "the code in force where you work, the authority having jurisdiction and a licensed electrician decide."
+    "Articles are those of the NEC (NFPA 70). Editions differ, and what is marked as from memory was not read in "
+    "print: the code in force where you work, the authority having jurisdiction and a licensed electrician decide."
 )
 """What a report of findings says once, below them."""
 

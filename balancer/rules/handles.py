@@ -77,7 +77,7 @@ def _is_one_shared_neutral(group: Sequence[Circuit]) -> bool:
     return bool(group[0].shared_neutral) and len({circuit.shared_neutral.casefold() for circuit in group}) == 1
 
 
-RULES = (
+HANDLE_RULES = (
     Rule("shared-neutral-common-disconnect", Severity.WARNING, "NEC 2023, 210.4(B)", _common_disconnect),
     Rule("conductors-under-one-breaker", Severity.WARNING, "NEC 2023, 110.14(A) (from memory)", _double_tap),
     Rule("tied-breakers-apart", Severity.WARNING, "NEC 2023, 240.15(B) (from memory)", _tied_apart),

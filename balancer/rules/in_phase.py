@@ -25,4 +25,4 @@ def _no_voltage(landed: LandedPanel) -> Iterator[Observation]:
         yield Observation((circuit,), message, Severity.WARNING if is_in_doubt else None)
 
 
-RULES = (Rule("no-voltage-between-legs", Severity.ERROR, "NEC 2023, 710.15(C) (from memory)", _no_voltage),)
+IN_PHASE_RULES = (Rule("no-voltage-between-legs", Severity.ERROR, "NEC 2023, 710.15(C) (from memory)", _no_voltage),)

@@ -87,7 +87,7 @@ def _above_breaker(landed: LandedPanel) -> Iterator[Observation]:
         yield Observation((circuit,), message, Severity.NOTICE if circuit.load.is_assumed else None)
 
 
-RULES = (
+LOADING_RULES = (
     Rule(
         "continuous-load-above-80-percent",
         Severity.ERROR,

@@ -102,7 +102,7 @@ def _backfed_above_bus(landed: LandedPanel, bus_a: float) -> Iterator[Observatio
         if rating_a > bus_a:
             message = (
                 f"{landed.name(circuit)}: a backfed breaker of {rating_a:g} A on a bus of {bus_a:g} A (bus_a). If it "
-                "is the main, it does not protect the bus: check both labels, and enter main_a if the main is elsewhere."
+                "is the main, it does not protect the bus: check both labels, and enter main_a where it is not."
             )
             yield Observation((circuit,), message, Severity.NOTICE)
 
@@ -120,8 +120,8 @@ def _sources_on_bus(landed: LandedPanel) -> Iterator[Observation]:
         message = (
             f"{landed.names(circuits)}: main and backfed breakers add up to {total_a:g} A on a bus of {bus_a:g} A. For "
             "a source that runs together with the utility (solar, battery) up to "
-            f"{_BUS_SHARE_WITH_SOURCE * bus_a:g} A is allowed, with its breaker at the end opposite the main, and 125 % "
-            "of its output may count in place of the breaker. Behind an interlock this does not matter."
+            f"{_BUS_SHARE_WITH_SOURCE * bus_a:g} A is allowed, with its breaker at the end opposite the main, and "
+            "125 % of its output may count in place of the breaker. Behind an interlock this does not matter."
         )
         yield Observation(circuits, message)
 
@@ -143,7 +143,7 @@ def _off_the_neutral_bar(landed: LandedPanel) -> Iterator[Observation]:
             yield Observation((circuit,), message)
 
 
-RULES = (
+PANELBOARD_RULES = (
     Rule("tandem-not-allowed", Severity.ERROR, "NEC 2023, 110.3(B) (from memory) and 408.54", _tandem_not_allowed),
     Rule("stab-limit", Severity.ERROR, "Manufacturer's limit; NEC 2023, 110.3(B) (from memory)", _above_stab_limit),
     Rule("more-poles-than-the-panel-holds", Severity.ERROR, "NEC 2023, 408.54", _more_than_it_holds),

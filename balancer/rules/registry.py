@@ -5,27 +5,25 @@ from __future__ import annotations
 from collections.abc import Mapping
 
 from balancer.panel import Installation, Landing
-from balancer.rules import (
-    circuit_directory,
-    conductors,
-    handles,
-    in_phase,
-    loading,
-    panelboard,
-    shared_neutrals,
-)
+from balancer.rules.circuit_directory import DIRECTORY_RULES
+from balancer.rules.conductors import CONDUCTOR_RULES
 from balancer.rules.findings import Finding, Severity
+from balancer.rules.handles import HANDLE_RULES
+from balancer.rules.in_phase import IN_PHASE_RULES
 from balancer.rules.landed import LandedPanel
+from balancer.rules.loading import LOADING_RULES
+from balancer.rules.panelboard import PANELBOARD_RULES
 from balancer.rules.rule import Rule
+from balancer.rules.shared_neutrals import SHARED_NEUTRAL_RULES
 
 RULES: tuple[Rule, ...] = (
-    *shared_neutrals.RULES,
-    *in_phase.RULES,
-    *handles.RULES,
-    *conductors.RULES,
-    *loading.RULES,
-    *panelboard.RULES,
-    *circuit_directory.RULES,
+    *SHARED_NEUTRAL_RULES,
+    *IN_PHASE_RULES,
+    *HANDLE_RULES,
+    *CONDUCTOR_RULES,
+    *LOADING_RULES,
+    *PANELBOARD_RULES,
+    *DIRECTORY_RULES,
 )
 
 _GRAVEST_FIRST = (Severity.ERROR, Severity.WARNING, Severity.NOTICE)

@@ -107,7 +107,7 @@ def _not_checked(landed: LandedPanel) -> Iterator[Observation]:
         yield Observation(blank, message)
 
 
-RULES = (
+SHARED_NEUTRAL_RULES = (
     Rule("shared-neutral-one-leg", Severity.ERROR, "NEC 2023, 210.4 and 300.13(B) (300.13(B) from memory)", _one_leg),
     Rule("shared-neutral-three-hots", Severity.ERROR, "NEC 2023, 210.4 and Article 100 (from memory)", _three_hots),
     Rule("shared-neutral-in-phase", Severity.ERROR, "NEC 2023, 710.15(C) (from memory)", _in_phase),
