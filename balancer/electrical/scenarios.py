@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from enum import StrEnum
 
 import numpy as np
@@ -52,6 +52,16 @@ class Scenarios:
         """Count the scenarios."""
         return len(self.names)
 
+    def subset(self, rows: Sequence[int]) -> Scenarios:
+        """Keep the scenarios with these indices, in this order."""
+        return replace(
+            self,
+            names=tuple(self.names[row] for row in rows),
+            neutral_a=self.neutral_a[list(rows)],
+            line_a=self.line_a[list(rows)],
+            average_rows=None if self.average_rows is None else self.average_rows[list(rows)],
+        )
+
 
 def averages_only(scenarios: Scenarios) -> Scenarios | None:
     """Keep the scenarios that are averages over an hour or an interval; None where there are none."""
@@ -59,12 +69,5 @@ def averages_only(scenarios: Scenarios) -> Scenarios | None:
         return scenarios
     if scenarios.average_rows is None or not scenarios.average_rows.any():
         return None
-    rows = np.flatnonzero(scenarios.average_rows)
-    return Scenarios(
-        kind=scenarios.kind,
-        names=tuple(scenarios.names[int(row)] for row in rows),
-        neutral_a=scenarios.neutral_a[rows],
-        line_a=scenarios.line_a[rows],
-        are_averages=True,
-        notes=scenarios.notes,
-    )
+    rows = np.flatnonzero(scenarios.average_rows).tolist()
+    return replace(scenarios.subset(rows), are_averages=True, average_rows=None)
