@@ -1,0 +1,164 @@
+"""Measure the speeds that balancer promises and print them beside their targets, as a table for the README.
+
+Run it with the Python of the virtual environment: ``.venv/bin/python scripts/benchmark.py``. Every run that is timed
+has a process of its own, so imports count.
+"""
+
+from __future__ import annotations
+
+import argparse
+import concurrent.futures
+import json
+import multiprocessing
+import os
+import platform
+import statistics
+import subprocess
+import sys
+import time
+from collections.abc import Callable, Iterator
+from dataclasses import dataclass
+
+import numpy as np
+from demo import HOUSE
+from environment import ROOT
+
+from balancer.electrical.scenario_sets import share_scenarios
+from balancer.electrical.scenarios import Scenarios
+from balancer.panel import Circuit, Installation, Load, Panel, PowerFactor, Terminal, Volts, ordinary_spaces
+
+SPACES = 60
+CIRCUITS = 48
+SCENARIOS = 48
+SEEDS = 10
+POWER_FACTORS = (1.0, 0.98, 0.95, 0.9, 0.85, 0.8, 0.7)
+SHARES = (0.25, 0.5, 0.75, 1.0)
+
+
+@dataclass(frozen=True)
+class Timing:
+    """One line of the table: seconds [s] measured, against the most that is allowed."""
+
+    name: str
+    seconds: float
+    limit_s: float
+    remark: str
+    is_good: bool = True
+
+    @property
+    def verdict(self) -> str:
+        """Whether the target is met, in one word."""
+        return "met" if self.is_good and self.seconds <= self.limit_s else "MISSED"
+
+
+def time_command(arguments: list[str]) -> tuple[float, str]:
+    """Wall time [s] and standard output of the command line in a fresh process."""
+    began = time.perf_counter()
+    command = [sys.executable, "-m", "balancer", *arguments]
+    done = subprocess.run(command, cwd=ROOT, capture_output=True, text=True, check=True)
+    return time.perf_counter() - began, done.stdout
+
+
+def median_of_runs(arguments: list[str], runs: int) -> tuple[float, str]:
+    """Median wall time [s] of several runs, and the output of the last one."""
+    timed = [time_command(arguments) for _ in range(runs)]
+    return statistics.median(seconds for seconds, _ in timed), timed[-1][1]
+
+
+def measure_help(runs: int) -> Iterator[Timing]:
+    """Time until help is on the screen."""
+    seconds, _ = median_of_runs(["--help"], runs)
+    yield Timing("`balancer --help`", seconds, 0.3, f"median of {runs}")
+
+
+def measure_plan(runs: int) -> Iterator[Timing]:
+    """Time the crowded house from the command line to the proven plan."""
+    seconds, output = median_of_runs(["plan", *HOUSE, "--json"], runs)
+    bound = json.loads(output)["bound"]
+    remark = f"median of {runs}, {bound['optimum_peak_neutral']:.2f} A, {'proven' if bound['proven'] else 'NOT PROVEN'}"
+    yield Timing("`balancer plan`, crowded house", seconds, 4.0, remark, bound["proven"])
+
+
+def measure_tradeoff(runs: int) -> Iterator[Timing]:
+    """Time the curve of the crowded house from no landing to ten."""
+    seconds, output = median_of_runs(["tradeoff", *HOUSE, "--upto", "10", "--json"], runs)
+    points = json.loads(output)["points"]
+    is_proven = len(points) == 11 and all(point["proven"] for point in points)
+    remark = f"median of {runs}, {len(points)} points, {'all proven' if is_proven else 'NOT ALL PROVEN'}"
+    yield Timing("`balancer tradeoff`, 0 to 10 landings, crowded house", seconds, 15.0, remark, is_proven)
+
+
+def build_large_panel(seed: int) -> tuple[Installation, Scenarios]:
+    """Land 48 free single-pole circuits of mixed power factor at random in 60 spaces, with 48 random scenarios."""
+    chance = np.random.default_rng(seed)
+    spaces = chance.permutation(np.arange(1, SPACES + 1))[:CIRCUITS]
+    circuits = tuple(
+        Circuit(
+            label=f"c{number}",
+            landing=(Terminal(int(space)),),
+            volts=Volts.V120,
+            is_neutral_checked=True,
+            load=Load(
+                neutral_a=int(chance.integers(10, 161)) / 10,
+                neutral_pf=PowerFactor(float(chance.choice(POWER_FACTORS))),
+            ),
+        )
+        for number, space in enumerate(spaces, start=1)
+    )
+    is_on = chance.random((SCENARIOS, CIRCUITS)) < 0.5
+    shares = is_on * chance.choice(SHARES, (SCENARIOS, CIRCUITS))
+    installation = Installation(panel=Panel(spaces=ordinary_spaces(SPACES)), circuits=circuits)
+    return installation, share_scenarios(installation, [f"s{row}" for row in range(1, SCENARIOS + 1)], shares)
+
+
+def solve_large_panel(seed: int) -> tuple[float, float, float]:
+    """Wall time [s], lowest peak neutral [A] and its proven bound [A] of one seeded panel, imports included."""
+    began = time.perf_counter()
+    from balancer.arrange import plan_arrangement
+    from balancer.arrange.results import Options
+
+    first = plan_arrangement(*build_large_panel(seed), Options()).objectives[0]
+    return time.perf_counter() - began, first.value, first.bound
+
+
+def measure_large_panels(runs: int) -> Iterator[Timing]:
+    """Time the proof of the lowest peak neutral on every seeded panel, once each, whatever `runs` says."""
+    del runs
+    for seed in range(1, SEEDS + 1):
+        alone = multiprocessing.get_context("spawn")
+        with concurrent.futures.ProcessPoolExecutor(1, mp_context=alone) as process:
+            seconds, value_a, bound_a = process.submit(solve_large_panel, seed).result()
+        remark = f"{value_a:.3f} A, at most {value_a - bound_a:.3f} A above the best possible"
+        name = f"{SPACES} spaces, {CIRCUITS} circuits, {SCENARIOS} scenarios, seed {seed}"
+        yield Timing(name, seconds, 30.0, remark, value_a - bound_a <= 0.05)
+
+
+MEASUREMENTS: dict[str, Callable[[int], Iterator[Timing]]] = {
+    "help": measure_help,
+    "plan": measure_plan,
+    "tradeoff": measure_tradeoff,
+    "large": measure_large_panels,
+}
+
+
+def main() -> int:
+    """Print the table line by line; the exit code is 1 where a target is missed."""
+    parser = argparse.ArgumentParser(description=__doc__)
+    parser.add_argument("--only", choices=MEASUREMENTS, nargs="+", default=list(MEASUREMENTS), help="what to measure")
+    parser.add_argument("--runs", type=int, default=5, help="runs behind each median (default 5)")
+    options = parser.parse_args()
+    print(f"{platform.system()} {platform.machine()}, {os.cpu_count()} cores, Python {platform.python_version()}\n")
+    print("| what | time | target | verdict | remark |\n|---|---|---|---|---|")
+    verdicts = []
+    for name in options.only:
+        for timing in MEASUREMENTS[name](options.runs):
+            cells = (
+                f"{timing.name} | {timing.seconds:.2f} s | {timing.limit_s:g} s | {timing.verdict} | {timing.remark}"
+            )
+            print(f"| {cells} |", flush=True)
+            verdicts.append(timing.verdict)
+    return 1 if "MISSED" in verdicts else 0
+
+
+if __name__ == "__main__":
+    sys.exit(main())
