@@ -1,0 +1,49 @@
+"""A progress line on stderr: only on a terminal, only when it takes long, gone when done."""
+
+from __future__ import annotations
+
+import threading
+from types import TracebackType
+from typing import TYPE_CHECKING
+
+from rich.console import Console
+from rich.status import Status
+
+from balancer.reports.text import format_number
+
+if TYPE_CHECKING:
+    from balancer.arrange.results import Progress
+
+PATIENCE_S = 1.0
+"""Nobody wonders what a program does before this long."""
+
+
+class ProgressLine:
+    """Shows the best value and the bound so far; a listener for the planner, used as a context."""
+
+    def __init__(self, console: Console, *, is_quiet: bool) -> None:
+        self._is_shown = console.is_terminal and not is_quiet
+        self._status = Status("Looking for the best arrangement", console=console)
+        self._timer = threading.Timer(PATIENCE_S, self._status.start)
+        self._timer.daemon = True
+
+    def __call__(self, news: Progress) -> None:
+        """Take news from the planner, from whatever thread."""
+        if self._is_shown:
+            best, bound = format_number(news.best), format_number(news.bound)
+            self._status.update(f"{news.objective}: best so far {best}, no less than {bound} (Ctrl-C: stop and show)")
+
+    def __enter__(self) -> ProgressLine:
+        """Start waiting."""
+        if self._is_shown:
+            self._timer.start()
+        return self
+
+    def __exit__(
+        self, kind: type[BaseException] | None, error: BaseException | None, trace: TracebackType | None
+    ) -> None:
+        """Take the line away."""
+        if self._is_shown:
+            self._timer.cancel()
+            self._timer.join()
+            self._status.stop()

@@ -1,0 +1,57 @@
+"""Files to begin with: a blank inventory and panel file, or an example house."""
+
+from __future__ import annotations
+
+import os
+from collections.abc import Mapping
+from importlib import resources
+from pathlib import Path
+
+from balancer.errors import OptionError
+
+INVENTORY, PANEL, SCENARIOS = "inventory.csv", "panel.toml", "scenarios.csv"
+
+
+def blank_files() -> dict[str, str]:
+    """Give the text of every blank file by its name."""
+    from balancer.files.blank import blank_inventory_text, blank_panel_text
+
+    return {INVENTORY: blank_inventory_text(), PANEL: blank_panel_text()}
+
+
+def example_files() -> dict[str, str]:
+    """Give the text of every file of the example house by its name."""
+    folder = resources.files("balancer.files") / "example"
+    return {name: (folder / name).read_text(encoding="utf-8") for name in (INVENTORY, PANEL, SCENARIOS)}
+
+
+def write_files(directory: str, texts: Mapping[str, str], *, force: bool) -> tuple[str, ...]:
+    """Write all of the files or none, and give their paths.
+
+    Raises
+    ------
+    OptionError
+        When one of them exists and is not to be replaced, or the directory cannot be written.
+    """
+    paths = {name: Path(directory) / name for name in texts}
+    existing = [str(path) for path in paths.values() if path.exists()]
+    if existing and not force:
+        problem = f"{', '.join(existing)} {'exist' if len(existing) > 1 else 'exists'} already; nothing was written"
+        raise OptionError(problem, "Name another directory, or add --force to replace what is there.")
+    try:
+        Path(directory).mkdir(parents=True, exist_ok=True)
+        for name, path in paths.items():
+            _replace(path, texts[name])
+    except OSError as error:
+        problem = f"{directory} cannot be written: {error.strerror}"
+        raise OptionError(problem, "Name a directory that you may write to.") from error
+    return tuple(str(path) for path in paths.values())
+
+
+def _replace(path: Path, text: str) -> None:
+    partial = path.with_name(f".{path.name}.part")
+    try:
+        partial.write_text(text, encoding="utf-8", newline="")
+        os.replace(partial, path)
+    finally:
+        partial.unlink(missing_ok=True)

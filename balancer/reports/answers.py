@@ -1,0 +1,80 @@
+"""What the commands answer, gathered once for the terminal report and for the JSON document."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from balancer.arrange.clamp import ClampReading, clamp_check
+from balancer.arrange.explain import PeakExplanation, explain_peak
+from balancer.arrange.results import Plan, Tradeoff
+from balancer.arrange.steps import build_work
+from balancer.arrange.work import Work
+from balancer.electrical.phasors import PanelCurrents, Peaks
+from balancer.electrical.scenarios import Scenarios
+from balancer.panel import Installation
+from balancer.rules import Finding, check_installation, errors_of, new_errors
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class AsFoundAnswer:
+    """The panel as it stands. `peaks` and `explanation` are None where nothing is landed."""
+
+    installation: Installation
+    scenarios: Scenarios
+    peaks: Peaks | None
+    explanation: PeakExplanation | None
+    findings: tuple[Finding, ...]
+
+    @property
+    def has_errors(self) -> bool:
+        """Whether anything found is wrong or dangerous."""
+        return bool(errors_of(self.findings))
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class PlanAnswer:
+    """A plan with all that goes with it; `findings` are those as left, `cured` the errors that are gone."""
+
+    plan: Plan
+    work: Work
+    clamp_readings: tuple[ClampReading, ...]
+    before: AsFoundAnswer
+    explanation: PeakExplanation
+    findings: tuple[Finding, ...]
+    cured: tuple[Finding, ...]
+    fewer: Tradeoff | None
+    """What fewer landings would give; None where that was not asked or there are no fewer."""
+
+    @property
+    def has_errors(self) -> bool:
+        """Whether an error-level finding remains that the plan cannot cure."""
+        return bool(errors_of(self.findings))
+
+
+def as_found_answer(installation: Installation, scenarios: Scenarios) -> AsFoundAnswer:
+    """Work out what the legs and the neutral carry today."""
+    currents = PanelCurrents(installation, scenarios)
+    is_landed = bool(installation.as_found)
+    return AsFoundAnswer(
+        installation=installation,
+        scenarios=scenarios,
+        peaks=currents.peaks(installation.as_found) if is_landed else None,
+        explanation=explain_peak(currents, installation.as_found) if is_landed else None,
+        findings=check_installation(installation),
+    )
+
+
+def plan_answer(plan: Plan, fewer: Tradeoff | None = None) -> PlanAnswer:
+    """Gather the work, the clamp check and the findings of a plan."""
+    before = as_found_answer(plan.installation, plan.scenarios)
+    findings = check_installation(plan.installation, plan.as_left)
+    return PlanAnswer(
+        plan=plan,
+        work=build_work(plan.installation, plan.as_left, plan.removed_spares),
+        clamp_readings=clamp_check(plan.installation, plan.as_left),
+        before=before,
+        explanation=explain_peak(PanelCurrents(plan.installation, plan.scenarios), plan.as_left),
+        findings=findings,
+        cured=new_errors(findings, before.findings),
+        fewer=fewer,
+    )

@@ -1,0 +1,22 @@
+"""What every plan begins and ends with: the work is on equipment that can kill."""
+
+from __future__ import annotations
+
+BEFORE = (
+    "Shut off and lock out every source that can feed this panel: utility, solar, battery, generator. A generator or "
+    "a battery may start by itself when the main opens: disable its automatic start first.",
+    "Prove the bus dead with a meter that you have just tried on a live part, leg to leg and each leg to neutral.",
+    "The line-side lugs of the main stay live. Only the utility can make them dead.",
+    "The steps below are for a dead panel. Label every conductor before it leaves its terminal.",
+)
+
+AFTER = (
+    "Keep each neutral with its own circuit, and the two hots of a shared neutral on opposite legs.",
+    "Torque every terminal to the value on its label (NEC 110.14(D), from memory).",
+    "Replace the panel's directory with the one above (NEC 408.4(A), 2020): every circuit, the spares too.",
+    "Check with the clamp meter. Electronics may raise the readings: their odd harmonics cancel between legs 180 "
+    "degrees apart as the fundamental does, even ones add, and neither is in these figures. A water pipe or a ground "
+    "electrode may carry part of a service's neutral current.",
+    "Balancing does not make a lost neutral safe: one small load opposite a large one sees nearly full line voltage.",
+    "Local code, the authority having jurisdiction and a licensed electrician decide.",
+)
