@@ -90,10 +90,13 @@ def test_too_many_poles_is_a_warning_where_nobody_said_which_spaces_take_tandems
     assert finding.severity is Severity.WARNING
 
 
-def test_spare_taken_out_by_an_arrangement_needs_no_place(circuit, installation):
-    house = installation(circuit("x", "1-3", "240"), circuit("y", "2-4", "240"), spaces=4, tandem_spaces=frozenset())
-    findings = check_installation(house, {"x": parse_landing("2-4")})
-    assert HOLDS not in [finding.rule for finding in findings]
+def test_circuit_taken_out_by_an_arrangement_needs_no_place(circuit, installation):
+    house = installation(
+        circuit("x", "1-3", "240"), circuit("y", "2-4", "240"), circuit("z"), spaces=4, tandem_spaces=frozenset()
+    )
+    as_left = {"x": parse_landing("1-3"), "z": parse_landing("2")}
+    assert HOLDS in [finding.rule for finding in check_installation(house)]
+    assert HOLDS not in [finding.rule for finding in check_installation(house, as_left)]
 
 
 def test_main_above_the_bus_is_an_error(look):
