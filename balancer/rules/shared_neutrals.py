@@ -10,6 +10,8 @@ from balancer.rules.findings import Severity
 from balancer.rules.landed import LandedPanel, groups_by
 from balancer.rules.rule import Observation, Rule
 
+_MULTIWIRE = "NEC 2023, 210.4; Article 100, multiwire branch circuit (from memory)"
+
 
 def neutral_current_a(supply: Supply, hots: Sequence[tuple[Circuit, Leg]]) -> float:
     """Sum the currents of 120 V circuits at full load on one neutral, as a magnitude [A].
@@ -57,7 +59,7 @@ def _one_leg(landed: LandedPanel) -> Iterator[Observation]:
         assumed = " (assumed loads)" if first.load.is_assumed or second.load.is_assumed else ""
         message = (
             f"{landed.names((first, second))} share a neutral and both hots are on leg {leg}: the neutral carries the "
-            f"sum, {now_a:.1f} A at full load{assumed}, and no breaker watches it. On opposite legs it carries "
+            f"sum, {now_a:.1f} A at full load{assumed}, and no breaker protects it. On opposite legs it carries "
             f"{opposite_a:.1f} A. Land one of the two on the other leg, beside its partner, on a common disconnect."
         )
         yield Observation((first, second), message)
@@ -108,8 +110,8 @@ def _not_checked(landed: LandedPanel) -> Iterator[Observation]:
 
 
 SHARED_NEUTRAL_RULES = (
-    Rule("shared-neutral-one-leg", Severity.ERROR, "NEC 2023, 210.4 and 300.13(B) (300.13(B) from memory)", _one_leg),
-    Rule("shared-neutral-three-hots", Severity.ERROR, "NEC 2023, 210.4 and Article 100 (from memory)", _three_hots),
+    Rule("shared-neutral-one-leg", Severity.ERROR, _MULTIWIRE, _one_leg),
+    Rule("shared-neutral-three-hots", Severity.ERROR, _MULTIWIRE, _three_hots),
     Rule("shared-neutral-in-phase", Severity.ERROR, "NEC 2023, 710.15(C) (from memory)", _in_phase),
     Rule("shared-neutral-not-checked", Severity.NOTICE, "NEC 2023, 210.4", _not_checked),
 )
