@@ -10,8 +10,8 @@ from balancer.arrange.results import Plan, Tradeoff
 from balancer.arrange.steps import build_work
 from balancer.arrange.work import Work
 from balancer.electrical.phasors import PanelCurrents, Peaks
-from balancer.electrical.scenarios import Scenarios
-from balancer.panel import Installation
+from balancer.electrical.scenarios import Scenarios, averages_only
+from balancer.panel import Arrangement, Installation
 from balancer.rules import Finding, check_installation, errors_of, new_errors
 
 
@@ -24,6 +24,8 @@ class AsFoundAnswer:
     peaks: Peaks | None
     explanation: PeakExplanation | None
     findings: tuple[Finding, ...]
+    averages_peak_a: float | None = None
+    """Peak neutral [A] of the hourly or interval averages alone; None where there are none beside other scenarios."""
 
     @property
     def has_errors(self) -> bool:
@@ -44,6 +46,8 @@ class PlanAnswer:
     cured: tuple[Finding, ...]
     fewer: Tradeoff | None
     """What fewer landings would give; None where that was not asked or there are no fewer."""
+    averages_peak_a: float | None = None
+    """As left, see `AsFoundAnswer`."""
 
     @property
     def has_errors(self) -> bool:
@@ -61,6 +65,7 @@ def as_found_answer(installation: Installation, scenarios: Scenarios) -> AsFound
         peaks=currents.peaks(installation.as_found) if is_landed else None,
         explanation=explain_peak(currents, installation.as_found) if is_landed else None,
         findings=check_installation(installation),
+        averages_peak_a=_averages_peak_a(installation, scenarios, installation.as_found) if is_landed else None,
     )
 
 
@@ -77,4 +82,12 @@ def plan_answer(plan: Plan, fewer: Tradeoff | None = None) -> PlanAnswer:
         findings=findings,
         cured=new_errors(findings, before.findings),
         fewer=fewer,
+        averages_peak_a=_averages_peak_a(plan.installation, plan.scenarios, plan.as_left),
     )
+
+
+def _averages_peak_a(installation: Installation, scenarios: Scenarios, arrangement: Arrangement) -> float | None:
+    averages = averages_only(scenarios)
+    if averages is None or averages is scenarios:
+        return None
+    return float(PanelCurrents(installation, averages).currents(arrangement).neutral.max())

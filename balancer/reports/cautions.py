@@ -12,8 +12,8 @@ BEFORE = (
 
 AFTER = (
     "Keep each neutral with its own circuit, and the two hots of a shared neutral on opposite legs.",
-    "Torque every terminal to the value on its label (NEC 110.14(D), from memory).",
-    "Replace the panel's directory with the one above (NEC 408.4(A), 2020): every circuit, the spares too.",
+    "Torque every terminal to the value on its label (NEC 2023, 110.14(D), from memory).",
+    "Replace the panel's directory with the one above (NEC 2023, 408.4(A)): every circuit, the spares too.",
     "Check with the clamp meter. Electronics may raise the readings: their odd harmonics cancel between legs 180 "
     "degrees apart as the fundamental does, even ones add, and neither is in these figures. A water pipe or a ground "
     "electrode may carry part of a service's neutral current.",

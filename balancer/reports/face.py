@@ -15,9 +15,10 @@ from balancer.reports.text import crop, visible
 MARK = "*"
 _UPPER, _LOWER = "\u250c", "\u2514"
 _BETWEEN = " \u2502 "
-_FIXED_CELLS = 13
+_FIXED_CELLS = 14
 """Cells of a line that are not the name: leg, mark, space, bracket, amps and the blanks between."""
 _NARROWEST_NAME = 8
+_RATING_WIDTH = 3
 
 
 @dataclass(frozen=True)
@@ -36,7 +37,7 @@ class _Line:
         mark = MARK if self.is_marked else ""
         return (
             f"{self.leg:<1} {mark:<1} {self.space:>3} {self.bracket:<1} {crop(self.name, name_width)}"
-            f" {crop(self.amps, 3):>3}"
+            f" {self.amps:>{_RATING_WIDTH}}"
         )
 
 
@@ -87,7 +88,7 @@ class PanelFace:
 
     def _occupant_line(self, space: Space, circuit: Circuit, landing: Landing, pole: int) -> _Line:
         is_second = pole == 1
-        rating = "" if circuit.breaker_a is None or is_second else f"{circuit.breaker_a:g}"
+        rating = "" if circuit.breaker_a is None or is_second else crop(f"{circuit.breaker_a:g}", _RATING_WIDTH).strip()
         return _Line(
             leg=space.leg,
             space=str(landing[pole]),

@@ -2,9 +2,9 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
+from dataclasses import dataclass
 
-from rich.console import RenderableType
 from rich.table import Table
 from rich.text import Text
 
@@ -15,10 +15,10 @@ from balancer.panel import Installation, SupplySystem
 from balancer.reports.text import count_of, figures_table, format_amps, format_number, visible
 
 _KINDS = {
-    ScenarioKind.CONNECTED: "everything on: connected loads, all running at once (a planning assumption)",
-    ScenarioKind.PROFILES: "use profiles: planning assumptions by use, season and hour, not measurements",
-    ScenarioKind.SCENARIOS: "the scenario file: shares of full load as you gave them",
-    ScenarioKind.READINGS: "readings: measured intervals",
+    ScenarioKind.CONNECTED: "connected loads, everything on (planning assumptions)",
+    ScenarioKind.PROFILES: "use profiles (planning assumptions)",
+    ScenarioKind.SCENARIOS: "the scenario file, shares of full load as given there",
+    ScenarioKind.READINGS: "readings, measured intervals",
 }
 
 _SYSTEMS = {
@@ -43,23 +43,33 @@ def basis_lines(installation: Installation, scenarios: Scenarios) -> list[str]:
     ]
 
 
-def peaks_table(as_found: Peaks | None, as_left: Peaks | None) -> Table:
+@dataclass(frozen=True)
+class PeaksColumn:
+    """One column of the figures: its heading, its peaks and, where there are any, the averages' own peak [A]."""
+
+    heading: str
+    peaks: Peaks
+    averages_peak_a: float | None
+
+
+def peaks_table(columns: Sequence[PeaksColumn]) -> Table:
     """Show the figures as found and as left side by side, or those there are."""
-    shown = [(name, peaks) for name, peaks in (("as found", as_found), ("as left", as_left)) if peaks is not None]
-    table = figures_table("", *(name for name, _ in shown))
-    columns = [dict(_peak_rows(peaks)) for _, peaks in shown]
-    for name in columns[0]:
-        table.add_row(name, *(column[name] for column in columns))
+    table = figures_table("", *(column.heading for column in columns))
+    for cells in zip(*(_peak_rows(column) for column in columns), strict=True):
+        table.add_row(cells[0][0], *(figure for _, figure in cells))
     return table
 
 
-def _peak_rows(peaks: Peaks) -> Iterator[tuple[str, str]]:
+def _peak_rows(column: PeaksColumn) -> Iterator[tuple[str, str]]:
+    peaks = column.peaks
     yield "Peak leg A", format_amps(peaks.leg_a.value_a)
     yield "Peak leg B", format_amps(peaks.leg_b.value_a)
     yield "Peak heavy leg", format_amps(peaks.heavy_leg.value_a)
     yield "Peak imbalance of the legs", format_amps(peaks.imbalance.value_a)
     yield "  when the heavy leg peaks, of the legs' mean", f"{peaks.imbalance_pct:.0f} %"
     yield "Peak neutral", format_amps(peaks.neutral.value_a)
+    if column.averages_peak_a is not None:
+        yield "  of the averages alone", format_amps(column.averages_peak_a)
     yield "Mean neutral", format_amps(peaks.mean_neutral_a)
     yield "Largest possible neutral", format_amps(peaks.largest_possible_neutral_a)
 
@@ -104,8 +114,3 @@ def _contribution_rows(listed: tuple[Contribution, ...], rest_count: int, rest_a
         yield f"{rest_count} more", format_number(rest_a)
     if not listed and not rest_count:
         yield "nothing", ""
-
-
-def held_up(explanation: PeakExplanation) -> RenderableType:
-    """Say what keeps the peak from falling further."""
-    return Text(f"What holds it up: {visible(explanation.sentence)}", overflow="fold")

@@ -15,6 +15,7 @@ from balancer.reports.cautions import AFTER, BEFORE
 from balancer.reports.directory import directory_legend, directory_table
 from balancer.reports.face import MARK, PanelFace
 from balancer.reports.figures import (
+    PeaksColumn,
     basis_lines,
     contributions_table,
     largest_possible_text,
@@ -58,7 +59,12 @@ def as_found_report(answer: AsFoundAnswer) -> Group:
         )
     )
     blocks += [
-        section("Figures", peaks_table(peaks, None), Text(""), *_explained(answer)),
+        section(
+            "Figures",
+            peaks_table([PeaksColumn("as found", peaks, answer.averages_peak_a)]),
+            Text(""),
+            *_explained(answer),
+        ),
         section("What the figures rest on", bullets(basis_lines(installation, answer.scenarios))),
         section("The panel as found", PanelFace(installation, installation.as_found), *_face_legend("")),
         section("Findings", paragraph(f"{findings_count(answer.findings)}; balancer check shows them in full.")),
@@ -102,9 +108,12 @@ def _remaining_errors(answer: PlanAnswer) -> list[str]:
 
 def _figures(answer: PlanAnswer) -> Iterator[RenderableType]:
     plan = answer.plan
+    columns = [PeaksColumn("as left", plan.peaks_as_left, answer.averages_peak_a)]
+    if plan.peaks_as_found is not None:
+        columns.insert(0, PeaksColumn("as found", plan.peaks_as_found, answer.before.averages_peak_a))
     yield section(
         "As found and as left",
-        peaks_table(plan.peaks_as_found, plan.peaks_as_left),
+        peaks_table(columns),
         Text(""),
         paragraph(largest_possible_text(plan.installation)),
     )
@@ -144,14 +153,14 @@ def _panel(plan: Plan) -> Iterator[RenderableType]:
     changed = [c.label for c in installation.circuits if plan.as_left.get(c.label) != plan.as_found.get(c.label)]
     if plan.as_found and changed:
         face = PanelFace(installation, plan.as_found, changed)
-        yield section("The panel as found", face, *_face_legend("will be re-landed or taken out"))
+        yield section("The panel as found", face, *_face_legend("to be moved"))
     face = PanelFace(installation, plan.as_left, changed)
-    yield section("The panel as left", face, *_face_legend("re-landed or new" if changed else ""))
+    yield section("The panel as left", face, *_face_legend("moved or new" if changed else ""))
 
 
 def _face_legend(marked: str) -> list[Text]:
-    mark = f"{MARK} {marked}; " if marked else ""
-    return [Text(f"{mark}first letter of a line: its leg; A: breaker amps; \u250c \u2514 a two-pole breaker")]
+    mark = f"{MARK} {marked}   " if marked else ""
+    return [Text(f"{mark}left: leg and space   right: breaker amps   \u250c\u2514 one two-pole", overflow="fold")]
 
 
 def _after(answer: PlanAnswer) -> Iterator[RenderableType]:

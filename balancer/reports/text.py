@@ -40,8 +40,9 @@ def format_amps(current_a: float) -> str:
 
 
 def format_number(value: float) -> str:
-    """Print a figure with one decimal, or two below 1."""
-    return f"{value + 0.0:.{2 if abs(value) < 1 else 1}f}"
+    """Print a figure with one decimal, or two below 1 unless it is nothing."""
+    is_small = 0.005 <= abs(value) < 1
+    return f"{value:.2f}" if is_small else f"{round(value, 1) + 0.0:.1f}"
 
 
 def count_of(number: int, noun: str) -> str:

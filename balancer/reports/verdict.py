@@ -63,15 +63,17 @@ def _first_figure_a(plan: Plan, peaks: Peaks) -> float:
 
 def proof_table(objectives: tuple[ObjectiveResult, ...]) -> Table:
     """Show how far each objective is proven, in the order in which they were closed."""
-    table = figures_table("in this order", "reached", "no less than", "proof")
+    table = figures_table("in this order", "reached", "no less than")
+    table.add_column("proof", overflow="fold")
     for objective in objectives:
-        unit = "landings" if objective.name is ObjectiveName.EFFORT else "A"
+        is_effort = objective.name is ObjectiveName.EFFORT
         value, bound, gap = (
-            f"{figure:.3g} landings" if unit == "landings" else format_amps(figure)
+            f"{figure:g}" if is_effort else format_amps(figure)
             for figure in (objective.value, objective.bound, objective.gap)
         )
-        proof = "proven" if objective.is_proven else f"at most {gap} above the best possible"
-        table.add_row(str(objective.name), value, bound, proof)
+        proof = "proven" if objective.is_proven else f"at most {gap} above the best"
+        name = f"{objective.name}, in landings" if is_effort else str(objective.name)
+        table.add_row(name, value, bound, proof)
     return table
 
 
