@@ -21,10 +21,11 @@ _LINE_V_OVER_LEG_V = {SupplySystem.SPLIT: 2.0, SupplySystem.WYE: math.sqrt(3.0)}
 
 @dataclass(frozen=True)
 class LostNeutral:
-    """Voltages [V] across the two legs' 120 V loads when the neutral is open."""
+    """Voltages [V] from leg to neutral when the neutral is open, and the highest that any 120 V load sees."""
 
     leg_a_v: float
     leg_b_v: float
+    highest_on_load_v: float
 
 
 def service_voltages(
@@ -60,7 +61,7 @@ def lost_neutral(
 ) -> LostNeutral | None:
     """Voltages of one scenario's 120 V loads with the neutral lost; None where there are none to be hurt.
 
-    Where a 120 V part's pole is not known, the pole that gives the higher voltage counts.
+    Where a 120 V part's pole is not known, the pole that gives some load the higher voltage counts.
     """
     line_per_leg = _LINE_V_OVER_LEG_V.get(installation.panel.supply.system)
     if line_per_leg is None:
@@ -70,7 +71,7 @@ def lost_neutral(
         for loads in _nominal_loads(installation, scenarios, arrangement, scenario)
         if loads.leg_a_phasor_a + loads.leg_b_phasor_a != 0
     ]
-    return max(found, key=lambda each: max(each.leg_a_v, each.leg_b_v), default=None)
+    return max(found, key=lambda each: each.highest_on_load_v, default=None)
 
 
 def _divided(loads: NominalLoads, line_v: float) -> LostNeutral:
@@ -82,7 +83,8 @@ def _divided(loads: NominalLoads, line_v: float) -> LostNeutral:
     for a leg without load too.
     """
     leg_a, leg_b = loads.leg_a_phasor_a, loads.leg_b_phasor_a
-    return LostNeutral(abs(line_v * leg_b / (leg_a + leg_b)), abs(line_v * leg_a / (leg_a + leg_b)))
+    leg_a_v, leg_b_v = (abs(line_v * opposite / (leg_a + leg_b)) for opposite in (leg_b, leg_a))
+    return LostNeutral(leg_a_v, leg_b_v, max(leg_a_v if leg_a else 0.0, leg_b_v if leg_b else 0.0))
 
 
 def _nominal_loads(

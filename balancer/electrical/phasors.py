@@ -110,7 +110,7 @@ class PanelCurrents:
         neutral magnitudes are convex in how much of them flows on leg A, so all on A and all on B are the worst cases.
         """
         circuits, panel = self.installation.circuits, self.installation.panel
-        landed = np.array([bool(arrangement.get(c.label)) for c in circuits])
+        landed = np.array([bool(arrangement.get(c.label)) for c in circuits], dtype=bool)
         legs = [neutral_leg(panel, c, arrangement.get(c.label, ())) for c in circuits]
         sign = np.array([0.0 if leg is None else 1.0 if leg is Leg.A else -1.0 for leg in legs])
         unknown = landed & (sign == 0.0)
