@@ -8,14 +8,13 @@ from importlib import resources
 from pathlib import Path
 
 from balancer.errors import OptionError
+from balancer.files.blank import blank_inventory_text, blank_panel_text
 
 INVENTORY, PANEL, SCENARIOS = "inventory.csv", "panel.toml", "scenarios.csv"
 
 
 def blank_files() -> dict[str, str]:
     """Give the text of every blank file by its name."""
-    from balancer.files.blank import blank_inventory_text, blank_panel_text
-
     return {INVENTORY: blank_inventory_text(), PANEL: blank_panel_text()}
 
 

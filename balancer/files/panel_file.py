@@ -1,0 +1,75 @@
+"""The panel file: what stands on the wall and what feeds it, in TOML."""
+
+from __future__ import annotations
+
+from balancer.files.panel_spaces import SPACE_LIST, read_spaces
+from balancer.files.problems import ProblemList
+from balancer.files.source import FilePath
+from balancer.files.supply_table import read_supply
+from balancer.files.toml_source import read_toml
+from balancer.files.toml_table import TomlTable
+from balancer.panel import MAX_SPACES, Panel, ordinary_spaces
+
+PANEL_KEYS = (
+    *("name", "spaces", "main_a", "bus_a", "feed", "tandem_spaces", "plug_on_neutral", "bolt_on", "reserved"),
+    *("row_legs", "numbering", "crossing_in", "stab_a", SPACE_LIST),
+)
+
+_MOST_A = 2000.0
+_MOST_CROSSING_IN = 120.0
+
+_COMMON_SIZES = (2, 4, 6, 8, 12, 16, 20, 24, 30, 32, 40, 42, 54, 60, 66, 72, MAX_SPACES)
+"""Numbers of spaces that panels are made with (common practice, from memory)."""
+
+
+def read_panel_file(path: FilePath) -> Panel:
+    """Read a panel file.
+
+    Raises
+    ------
+    InputError
+        With everything that is wrong in it.
+    """
+    source = read_toml(path)
+    problems = ProblemList(source.file)
+    panel = _read_panel(TomlTable.root(source, problems))
+    problems.raise_if_any()
+    return panel
+
+
+def ordinary_panel(highest_space: int, poles: int) -> Panel:
+    """Make up the panel of an inventory without a panel file: 120/240 V, numbered across, rows alternating.
+
+    It ends with the row of the highest space used; where nothing is landed it is the smallest common size that holds
+    all poles.
+    """
+    count = highest_space + highest_space % 2
+    if not count:
+        count = next((size for size in _COMMON_SIZES if size >= poles), MAX_SPACES)
+    return Panel(spaces=ordinary_spaces(count), is_assumed=True)
+
+
+def _read_panel(root: TomlTable) -> Panel:
+    """Read both tables; where anything is reported the panel means nothing."""
+    root.refuse_unknown(("panel", "supply"))
+    if "panel" not in root:
+        root.report("panel", "the table [panel] is missing", "begin with a line [panel] and, say, spaces = 40 below it")
+    table = root.table("panel")
+    table.refuse_unknown(PANEL_KEYS)
+    spaces = read_spaces(table) if "panel" in root else ordinary_spaces(MAX_SPACES)
+    numbers = [space.number for space in spaces]
+    crossing_in = table.number("crossing_in", _MOST_CROSSING_IN, is_zero_allowed=True)
+    return Panel(
+        spaces=spaces,
+        name=table.text("name") or "",
+        main_a=table.number("main_a", _MOST_A),
+        bus_a=table.number("bus_a", _MOST_A),
+        feed=table.word("feed", ("top", "bottom")) or "top",
+        tandem_spaces=table.spaces("tandem_spaces", numbers),
+        plug_on_neutral=table.spaces("plug_on_neutral", numbers) or frozenset(),
+        bolt_on=table.spaces("bolt_on", numbers) or frozenset(),
+        reserved=table.spaces("reserved", numbers) or frozenset(),
+        crossing_in=Panel.crossing_in if crossing_in is None else crossing_in,
+        stab_a=table.number("stab_a", _MOST_A),
+        supply=read_supply(root.table("supply")),
+    )
