@@ -12,6 +12,8 @@ import pytest
 import balancer
 from balancer.commands import cli
 from balancer.files.columns import COLUMNS
+from balancer.files.panel_file import PANEL_KEYS
+from balancer.files.supply_table import SUPPLY_KEYS
 from balancer.rules import RULES
 
 ROOT = Path(balancer.__file__).parent.parent
@@ -64,6 +66,12 @@ def test_readme_explains_every_exit_code(code: str) -> None:
 @pytest.mark.parametrize("column", COLUMNS, ids=lambda column: column.name)
 def test_readme_lists_every_inventory_column(column) -> None:
     assert f"| `{column.name}` |" in README
+
+
+@pytest.mark.parametrize("key", [*PANEL_KEYS, *SUPPLY_KEYS])
+def test_readme_lists_every_key_of_the_panel_file(key: str) -> None:
+    shown = f"[[panel.{key}]]" if key == "space" else key
+    assert f"`{shown}`" in README
 
 
 def test_readme_gives_the_two_commands_and_the_plain_install() -> None:
