@@ -13,6 +13,7 @@ from balancer.files.columns import COLUMNS, SPACE
 from balancer.files.sheet import BLANKS, COMMENT, guard
 from balancer.files.source import STANDARD_INPUT, FilePath
 from balancer.files.table import header_key
+from balancer.files.whole_file import write_whole
 from balancer.panel import Installation, Landing
 
 _WORKBOOKS = (".xlsx", ".xls", ".ods")
@@ -53,7 +54,7 @@ def save_inventory(
     text = inventory_text(installation, as_left, removed_spares)
     data = text.encode("utf-8" if text.isascii() else "utf-8-sig")
     try:
-        _write_whole(target, data)
+        write_whole(target, data)
     except OSError as error:
         problem = f"{os.fspath(path)} cannot be written: {error.strerror or error}"
         raise OptionError(problem, "choose a directory that can be written to") from None
@@ -121,14 +122,3 @@ def _is_same_file(target: Path, other: str) -> bool:
     with contextlib.suppress(OSError):
         return target.samefile(other)
     return False
-
-
-def _write_whole(target: Path, data: bytes) -> None:
-    """Write beside the target and rename, so that a failure leaves what was there and nothing else."""
-    unfinished = target.with_name(f".{target.name}.{os.getpid()}.part")
-    try:
-        with unfinished.open("xb") as file:
-            file.write(data)
-        unfinished.replace(target)
-    finally:
-        unfinished.unlink(missing_ok=True)

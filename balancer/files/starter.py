@@ -2,13 +2,13 @@
 
 from __future__ import annotations
 
-import os
 from collections.abc import Mapping
 from importlib import resources
 from pathlib import Path
 
 from balancer.errors import OptionError
 from balancer.files.blank import blank_inventory_text, blank_panel_text
+from balancer.files.whole_file import write_whole
 
 INVENTORY, PANEL, SCENARIOS = "inventory.csv", "panel.toml", "scenarios.csv"
 
@@ -40,17 +40,8 @@ def write_files(directory: str, texts: Mapping[str, str], *, force: bool) -> tup
     try:
         Path(directory).mkdir(parents=True, exist_ok=True)
         for name, path in paths.items():
-            _replace(path, texts[name])
+            write_whole(path, texts[name].encode("utf-8"))
     except OSError as error:
         problem = f"{directory} cannot be written: {error.strerror}"
         raise OptionError(problem, "Name a directory that you may write to.") from error
     return tuple(str(path) for path in paths.values())
-
-
-def _replace(path: Path, text: str) -> None:
-    partial = path.with_name(f".{path.name}.part")
-    try:
-        partial.write_text(text, encoding="utf-8", newline="")
-        os.replace(partial, path)
-    finally:
-        partial.unlink(missing_ok=True)
