@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import os
 import sys
+import traceback
 from typing import Any
 
 import click
@@ -11,7 +12,7 @@ import click
 from balancer import __version__
 from balancer.commands import asfound, check, plan, start, tradeoff
 from balancer.commands.examples import write_examples
-from balancer.commands.failures import Failure, describe_failure
+from balancer.commands.failures import OUR_FAULT, Failure, describe_failure
 from balancer.commands.options import CONTEXT_SETTINGS
 
 EXAMPLES = (
@@ -57,10 +58,13 @@ class CommandLine(click.Group):
         kwargs["standalone_mode"] = False
         try:
             code = super().main(*args, **kwargs)
-        except (click.Abort, KeyboardInterrupt, Exception) as error:
+        except click.exceptions.NoArgsIsHelpError as help_wanted:
+            help_wanted.show()
+            code = help_wanted.exit_code
+        except (KeyboardInterrupt, Exception) as error:
             failure = describe_failure(error)
-            if failure.exit_code == 4 and _wants_traceback(words):
-                raise
+            if failure.exit_code == OUR_FAULT and _wants_traceback(words):
+                traceback.print_exc()
             code = _report(failure, as_json="--json" in words)
         sys.exit(code if isinstance(code, int) else 0)
 

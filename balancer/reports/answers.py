@@ -12,6 +12,7 @@ from balancer.arrange.work import Work
 from balancer.electrical.phasors import PanelCurrents, Peaks
 from balancer.electrical.scenarios import Scenarios, averages_only
 from balancer.panel import Arrangement, Installation
+from balancer.reports.voltages import PanelVoltages, panel_voltages
 from balancer.rules import Finding, check_installation, errors_of, new_errors
 
 
@@ -26,6 +27,8 @@ class AsFoundAnswer:
     findings: tuple[Finding, ...]
     averages_peak_a: float | None = None
     """Peak neutral [A] of the hourly or interval averages alone; None where there are none beside other scenarios."""
+    voltages: PanelVoltages | None = None
+    """When the neutral peaks; None where the panel file gives no impedances."""
 
     @property
     def has_errors(self) -> bool:
@@ -48,6 +51,8 @@ class PlanAnswer:
     """What fewer landings would give; None where that was not asked or there are no fewer."""
     averages_peak_a: float | None = None
     """As left, see `AsFoundAnswer`."""
+    voltages: PanelVoltages | None = None
+    """As left, see `AsFoundAnswer`."""
 
     @property
     def has_errors(self) -> bool:
@@ -57,15 +62,22 @@ class PlanAnswer:
 
 def as_found_answer(installation: Installation, scenarios: Scenarios) -> AsFoundAnswer:
     """Work out what the legs and the neutral carry today."""
+    findings = check_installation(installation)
+    found = installation.as_found
+    if not found:
+        return AsFoundAnswer(
+            installation=installation, scenarios=scenarios, peaks=None, explanation=None, findings=findings
+        )
     currents = PanelCurrents(installation, scenarios)
-    is_landed = bool(installation.as_found)
+    explanation = explain_peak(currents, found)
     return AsFoundAnswer(
         installation=installation,
         scenarios=scenarios,
-        peaks=currents.peaks(installation.as_found) if is_landed else None,
-        explanation=explain_peak(currents, installation.as_found) if is_landed else None,
-        findings=check_installation(installation),
-        averages_peak_a=_averages_peak_a(installation, scenarios, installation.as_found) if is_landed else None,
+        peaks=currents.peaks(found),
+        explanation=explanation,
+        findings=findings,
+        averages_peak_a=_averages_peak_a(installation, scenarios, found),
+        voltages=panel_voltages(installation, scenarios, found, explanation.scenario),
     )
 
 
@@ -73,16 +85,18 @@ def plan_answer(plan: Plan, fewer: Tradeoff | None = None) -> PlanAnswer:
     """Gather the work, the clamp check and the findings of a plan."""
     before = as_found_answer(plan.installation, plan.scenarios)
     findings = check_installation(plan.installation, plan.as_left)
+    explanation = explain_peak(PanelCurrents(plan.installation, plan.scenarios), plan.as_left)
     return PlanAnswer(
         plan=plan,
         work=build_work(plan.installation, plan.as_left, plan.removed_spares),
         clamp_readings=clamp_check(plan.installation, plan.as_left),
         before=before,
-        explanation=explain_peak(PanelCurrents(plan.installation, plan.scenarios), plan.as_left),
+        explanation=explanation,
         findings=findings,
         cured=new_errors(findings, before.findings),
         fewer=fewer,
         averages_peak_a=_averages_peak_a(plan.installation, plan.scenarios, plan.as_left),
+        voltages=panel_voltages(plan.installation, plan.scenarios, plan.as_left, explanation.scenario),
     )
 
 

@@ -17,6 +17,5 @@ AFTER = (
     "Check with the clamp meter. Electronics may raise the readings: their odd harmonics cancel between legs 180 "
     "degrees apart as the fundamental does, even ones add, and neither is in these figures. A water pipe or a ground "
     "electrode may carry part of a service's neutral current.",
-    "Balancing does not make a lost neutral safe: one small load opposite a large one sees nearly full line voltage.",
     "Local code, the authority having jurisdiction and a licensed electrician decide.",
 )

@@ -15,6 +15,7 @@ from balancer.electrical.scenarios import Scenarios
 from balancer.errors import Problem
 from balancer.panel import Arrangement, Circuit, Installation, Landing, format_landing
 from balancer.reports.answers import AsFoundAnswer, PlanAnswer
+from balancer.reports.voltages import PanelVoltages
 from balancer.rules import Finding
 
 SCHEMA = 1
@@ -38,7 +39,8 @@ def plan_document(answer: PlanAnswer) -> Document:
         "complete": plan.is_complete,
         "cured": _findings(answer.cured),
         "objectives": [_objective(objective) for objective in plan.objectives],
-        "peak": _explanation(answer.explanation),
+        "peak": _explanation(answer.explanation) | {"held_up_by": answer.explanation.sentence},
+        "voltages": {"as_found": _voltages(answer.before.voltages), "as_left": _voltages(answer.voltages)},
         "fewer_landings": [] if answer.fewer is None else _points(answer.fewer),
         "clamp_check": [_clamp(reading) for reading in answer.clamp_readings],
         **_work(answer.work),
@@ -61,6 +63,7 @@ def as_found_document(answer: AsFoundAnswer) -> Document:
         "findings": _findings(answer.findings),
         "complete": True,
         "peak": None if answer.explanation is None else _explanation(answer.explanation),
+        "voltages": {"as_found": _voltages(answer.voltages), "as_left": None},
         "notes": _notes(answer.installation, answer.scenarios),
     }
 
@@ -184,7 +187,18 @@ def _explanation(explanation: PeakExplanation) -> Document:
         "scenario": explanation.scenario_name,
         "peak_neutral": _rounded(explanation.neutral_a),
         "circuits": [{"circuit": c.circuit, "leg": str(c.leg), "amps": _rounded(c.current_a)} for c in listed],
-        "held_up_by": explanation.sentence,
+    }
+
+
+def _voltages(voltages: PanelVoltages | None) -> Document | None:
+    if voltages is None or voltages.service is None:
+        return None
+    return {
+        "leg_a_v": _rounded(voltages.service.leg_a_v),
+        "leg_b_v": _rounded(voltages.service.leg_b_v),
+        "neutral_shift_v": _rounded(voltages.service.neutral_shift_v),
+        "neutral_loss_w": _rounded(voltages.service.neutral_loss_w),
+        "lost_neutral_highest_v": None if voltages.lost is None else _rounded(voltages.lost.highest_on_load_v),
     }
 
 

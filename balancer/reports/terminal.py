@@ -2,11 +2,12 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 
 from rich.console import Group, RenderableType
 from rich.text import Text
 
+from balancer.arrange.explain import PeakExplanation
 from balancer.arrange.results import Aim, Plan, Tradeoff
 from balancer.electrical.scenarios import Scenarios
 from balancer.panel import Installation
@@ -25,6 +26,7 @@ from balancer.reports.figures import (
 from balancer.reports.findings import findings_count, findings_list
 from balancer.reports.text import bullets, format_amps, numbered, paragraph, section, visible
 from balancer.reports.verdict import flat_text, proof_table, tradeoff_table, verdict
+from balancer.reports.voltages import PanelVoltages, voltages_block
 from balancer.reports.work import clamp_table, part_list, pre_move_list, step_list
 from balancer.rules import errors_of
 
@@ -36,7 +38,7 @@ def plan_report(answer: PlanAnswer) -> Group:
     plan = answer.plan
     blocks: list[RenderableType] = [_title(plan.installation), paragraph(verdict(plan), style="bold")]
     blocks += [paragraph(note) for note in (*_remaining_errors(answer), *plan.notes)]
-    blocks += _figures(answer)
+    blocks += _reasons(answer)
     blocks += _work(answer)
     blocks += _panel(plan)
     blocks += _after(answer)
@@ -50,26 +52,24 @@ def as_found_report(answer: AsFoundAnswer) -> Group:
     if answer.peaks is None or answer.explanation is None:
         blocks.append(paragraph("No circuit is landed yet, so nothing flows. Plan a new layout with: balancer plan"))
         return Group(*blocks)
-    peaks = answer.peaks
-    blocks.append(
-        paragraph(
-            f"As found the neutral peaks at {format_amps(peaks.neutral.value_a)} and the heavy leg at "
-            f"{format_amps(peaks.heavy_leg.value_a)}.",
-            style="bold",
-        )
-    )
+    neutral_a, heavy_a = answer.peaks.neutral.value_a, answer.peaks.heavy_leg.value_a
     blocks += [
-        section(
-            "Figures",
-            peaks_table([PeaksColumn("as found", peaks, answer.averages_peak_a)]),
-            Text(""),
-            *_explained(answer),
+        paragraph(
+            f"As found the neutral peaks at {format_amps(neutral_a)} and the heavy leg at {format_amps(heavy_a)}.",
+            style="bold",
         ),
+        *_figures("Figures", [PeaksColumn("as found", answer.peaks, answer.averages_peak_a)], installation),
+        *_peak(when_lines(answer.scenarios, "As found", answer.peaks), answer.explanation),
+        *_voltages([("as found", answer.voltages)]),
         section("What the figures rest on", bullets(basis_lines(installation, answer.scenarios))),
         section("The panel as found", PanelFace(installation, installation.as_found), *_face_legend("")),
-        section("Findings", paragraph(f"{findings_count(answer.findings)}; balancer check shows them in full.")),
+        section("Findings", paragraph(f"{findings_count(answer.findings).capitalize()}.{_see_check(answer)}")),
     ]
     return Group(*blocks)
+
+
+def _see_check(answer: AsFoundAnswer) -> str:
+    return " See them in full with: balancer check" if answer.findings else ""
 
 
 def check_report(answer: AsFoundAnswer) -> Group:
@@ -106,30 +106,41 @@ def _remaining_errors(answer: PlanAnswer) -> list[str]:
     return [f"Errors remain that no re-landing cures ({rules}): see the findings. Mend them first."]
 
 
-def _figures(answer: PlanAnswer) -> Iterator[RenderableType]:
-    plan = answer.plan
-    columns = [PeaksColumn("as left", plan.peaks_as_left, answer.averages_peak_a)]
-    if plan.peaks_as_found is not None:
-        columns.insert(0, PeaksColumn("as found", plan.peaks_as_found, answer.before.averages_peak_a))
-    yield section(
-        "As found and as left",
-        peaks_table(columns),
-        Text(""),
-        paragraph(largest_possible_text(plan.installation)),
-    )
-    lines = [] if plan.peaks_as_found is None else when_lines(plan.scenarios, "As found", plan.peaks_as_found)
-    lines += when_lines(plan.scenarios, "As left", plan.peaks_as_left)
+def _figures(title: str, columns: Sequence[PeaksColumn], installation: Installation) -> Iterator[RenderableType]:
+    yield section(title, peaks_table(columns), Text(""), paragraph(largest_possible_text(installation)))
+
+
+def _peak(when: Sequence[str], explanation: PeakExplanation, *more: RenderableType) -> Iterator[RenderableType]:
     yield section(
         "What makes the peak",
-        bullets(lines),
+        bullets(when),
         Text(""),
-        paragraph(f"As left, in {answer.explanation.scenario_name}:"),
-        contributions_table(answer.explanation),
-        paragraph(f"What holds it up: {answer.explanation.sentence}"),
+        paragraph(f"{format_amps(explanation.neutral_a)} in the neutral, in {explanation.scenario_name}:"),
+        contributions_table(explanation),
+        *more,
     )
+
+
+def _voltages(columns: Sequence[tuple[str, PanelVoltages | None]]) -> Iterator[RenderableType]:
+    block = voltages_block(columns)
+    if block is not None:
+        yield section("Voltages when the neutral peaks", block)
+
+
+def _reasons(answer: PlanAnswer) -> Iterator[RenderableType]:
+    plan, before = answer.plan, answer.before
+    columns = [PeaksColumn("as left", plan.peaks_as_left, answer.averages_peak_a)]
+    when = when_lines(plan.scenarios, "As left", plan.peaks_as_left)
+    if plan.peaks_as_found is not None:
+        columns.insert(0, PeaksColumn("as found", plan.peaks_as_found, before.averages_peak_a))
+        when = when_lines(plan.scenarios, "As found", plan.peaks_as_found) + when
+    yield from _figures("As found and as left", columns, plan.installation)
+    held_up = paragraph(f"What holds it up: {answer.explanation.sentence}")
+    yield from _peak(when, answer.explanation, held_up)
     yield section("How good it is", proof_table(plan.objectives))
     if answer.fewer is not None and answer.fewer.points:
         yield section("What fewer landings would give", tradeoff_table(answer.fewer, plan.options.aim))
+    yield from _voltages([("as found", before.voltages), ("as left", answer.voltages)])
     yield section("What the figures rest on", bullets(basis_lines(plan.installation, plan.scenarios)))
 
 
@@ -177,13 +188,3 @@ def _after(answer: PlanAnswer) -> Iterator[RenderableType]:
     if answer.findings:
         yield section("Findings as left", findings_list(answer.findings))
     yield section("Afterwards", bullets(AFTER))
-
-
-def _explained(answer: AsFoundAnswer) -> Iterator[RenderableType]:
-    if answer.explanation is None or answer.peaks is None:
-        return
-    yield paragraph(largest_possible_text(answer.installation))
-    yield bullets(when_lines(answer.scenarios, "As found", answer.peaks))
-    yield Text("")
-    yield paragraph(f"The neutral's peak, in {answer.explanation.scenario_name}:")
-    yield contributions_table(answer.explanation)
