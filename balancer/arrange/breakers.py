@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import itertools
-from collections.abc import Iterable, Mapping
+from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from enum import StrEnum
 from functools import cached_property
@@ -70,9 +70,10 @@ def plan_breakers(installation: Installation, as_left: Arrangement) -> BreakerPl
 
     Notes
     -----
-    A breaker stays where the circuit that arrives needs exactly its rating and type, and where every circuit that
-    leaves it arrives at another breaker that stays. So conductors change places on standing breakers in closed rounds
-    only, and breakers neither run out nor are left over; everywhere else the breaker goes with its circuit.
+    A breaker stays where the circuit that arrives needs exactly its rating and type, where that one leaves a breaker
+    that stays too, and where every circuit that leaves it arrives at another breaker that stays. So conductors change
+    places on standing breakers in closed rounds only, and breakers neither run out nor are left over; everywhere else
+    the breaker goes with its circuit. A new circuit may end a round on the breaker of a spare that gives way.
     """
     return _Assignment(installation, as_left).plan()
 
@@ -145,8 +146,7 @@ class _Assignment:
         """As-left bodies whose breaker is the one found there: the largest choice that closes upon itself."""
         staying = [body for body in self.left_bodies if self._fits(body)]
         while True:
-            served = {label for body in staying for label in body.circuits}
-            closed = [body for body in staying if self._is_untouched(body) or self._is_closed(body, served)]
+            closed = [body for body in staying if self._is_untouched(body) or self._is_closed(body, staying)]
             if len(closed) == len(staying):
                 return closed
             staying = closed
@@ -154,10 +154,13 @@ class _Assignment:
     def _is_untouched(self, body: Body) -> bool:
         return all(self.found.get(label) == self.left[label] for label in body.circuits)
 
-    def _is_closed(self, body: Body, served: set[str]) -> bool:
+    def _is_closed(self, body: Body, staying: Sequence[Body]) -> bool:
+        served = {label for each in staying for label in each.circuits}
+        spaces = {space for each in staying for space in each.spaces}
         leaving = [label for each in self.found_bodies if each.spaces & body.spaces for label in each.circuits]
         partners = [label for tie in self.ties_left for label in tie if tie & set(body.circuits)]
-        return all(label in served for label in (*leaving, *partners) if label in self.left)
+        came_from = {terminal.space for label in body.circuits for terminal in self.found.get(label, ())}
+        return came_from <= spaces and all(label in served for label in (*leaving, *partners) if label in self.left)
 
     def _fits(self, body: Body) -> bool:
         if self._is_untouched(body):

@@ -126,7 +126,7 @@ def along_texts(step: Step, installation: Installation, as_left: Arrangement, br
 
 def _rating_text(step: Step, circuit: Circuit) -> str:
     needed_a = needed_rating_a(circuit)
-    if not step.from_ or needed_a == circuit.breaker_a:
+    if not (step.from_ and step.is_new_breaker) or needed_a == circuit.breaker_a:
         return ""
     return f"Its old {circuit.breaker_a:g} A breaker is above its conductor's limit of {needed_a:g} A and comes out."
 

@@ -122,6 +122,9 @@ class _Rework:
             if label != circuit.label
         )
 
+    def _keeps_breaker(self, circuit: Circuit) -> bool:
+        return self._source(circuit) is Source.GOES_ALONG or set(self.to(circuit)) == set(circuit.landing)
+
     def _how(self, circuit: Circuit) -> How:
         if not circuit.is_landed:
             return How.NEW
@@ -171,7 +174,7 @@ class _Rework:
             was_lifted=was_lifted,
             with_breaker=source is Source.GOES_ALONG,
             is_new_breaker=source is Source.NEW,
-            breaker_a=circuit.breaker_a if source is Source.GOES_ALONG else needed_rating_a(circuit),
+            breaker_a=circuit.breaker_a if self._keeps_breaker(circuit) else needed_rating_a(circuit),
             reach_in=reach_in,
             splice=_splice(circuit, reach_in),
         )
