@@ -46,16 +46,14 @@ def find_hold(moment: Moment, neutral_a: float, options: Options) -> tuple[HeldB
     return _Hold(moment, neutral_a, options).find()
 
 
-@dataclass(frozen=True, eq=False)
+@dataclass(frozen=True)
 class _Move:
-    """A unit on other legs: the neutral [A] that it leaves in every scenario."""
+    """A unit on other legs: the neutral [A] left in the governing scenario, and the peak with its scenario."""
 
-    unit: Unit
-    neutral_a: FloatArray
-
-    @property
-    def peak_a(self) -> float:
-        return float(self.neutral_a.max())
+    words: str
+    here_a: float
+    peak_a: float
+    peak_scenario: int
 
 
 class _Hold:
@@ -114,29 +112,28 @@ class _Hold:
 
     def _one_move(self) -> tuple[HeldBy, str] | None:
         """Name the best single move for the governing scenario, and the scenario that it raises."""
-        here = self.moment.scenario
-        helping = [move for move in self._moves() if move.neutral_a[here] < self.neutral_a - _TELLING_A]
+        helping = [move for move in self._moves() if move.here_a < self.neutral_a - _TELLING_A]
         if not helping:
             return None
-        best = min(helping, key=lambda move: (move.peak_a, float(move.neutral_a[here])))
-        what = f"Moving {_names(best.unit.circuits)} to the other leg"
+        best = min(helping, key=lambda move: (move.peak_a, move.here_a))
         if best.peak_a < self.neutral_a - _TELLING_A:
             return HeldBy.CONSTRAINTS, (
-                f"{what} would bring the peak to {best.peak_a:.1f} A, but the free places, the landings allowed or"
-                " another limit stand against it."
+                f"{best.words} would bring the peak to {best.peak_a:.1f} A, but the free places, the landings allowed"
+                " or another limit stand against it."
             )
-        other = int(np.argmax(best.neutral_a))
         return HeldBy.OTHER_SCENARIO, (
-            f"{what} would bring it to {best.neutral_a[here]:.1f} A here, but raise"
-            f" {self.moment.currents.scenarios.names[other]} to {best.peak_a:.1f} A."
+            f"{best.words} would bring it to {best.here_a:.1f} A here, but raise"
+            f" {self.moment.currents.scenarios.names[best.peak_scenario]} to {best.peak_a:.1f} A."
         )
 
     def _moves(self) -> Iterator[_Move]:
         cases = list(self.moment.currents.cases(self.moment.arrangement))
         for unit in build_units(self.installation, self.options):
             for change in self._changes(unit):
-                phasors = self._phasors(unit) @ change
-                yield _Move(unit, _worst_neutral(cases, phasors))
+                neutral_a = _worst_neutral(cases, self._phasors(unit) @ change)
+                peak = int(np.argmax(neutral_a))
+                here_a = float(neutral_a[self.moment.scenario])
+                yield _Move(_words(unit, change), here_a, float(neutral_a[peak]), peak)
 
     def _phasors(self, unit: Unit, scenarios: slice = slice(None)) -> ComplexArray:
         """Line-to-neutral phasors [A] of a unit's circuits, (scenarios, circuits of the unit)."""
@@ -197,5 +194,8 @@ def _name(circuit: Circuit) -> str:
     return f"{circuit.label} ({circuit.description})" if circuit.description else circuit.label
 
 
-def _names(circuits: Sequence[Circuit]) -> str:
-    return " and ".join(_name(circuit) for circuit in circuits)
+def _words(unit: Unit, change: FloatArray) -> str:
+    names = " and ".join(_name(circuit) for circuit, turn in zip(unit.circuits, change, strict=True) if turn)
+    if change.min() < 0 < change.max():
+        return f"Turning {names} over"
+    return f"Moving {names} to the other leg"

@@ -113,6 +113,12 @@ def test_several_moves_may_do_what_none_does_alone(installation, circuit):
     assert "would leave 1.0 A here" in found.sentence
 
 
+def test_a_pair_is_turned_over_and_not_moved(installation, circuit):
+    pair = [circuit("P", "1", shared_neutral="n"), circuit("Q", "3", shared_neutral="n")]
+    found = explain(installation(*pair, circuit("L", "5")), [6, 2, 3])
+    assert found.sentence.startswith("Turning P and Q over would bring the peak to 1.0 A")
+
+
 def test_a_fixed_circuit_is_no_move(installation, circuit):
     wall = installation(circuit("X", "1", is_fixed=True), circuit("Y", "5", is_fixed=True))
     assert explain(wall, [5, 5]).held_by is HeldBy.NO_CLOSER_SPLIT
