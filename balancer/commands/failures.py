@@ -52,7 +52,9 @@ def describe_failure(error: BaseException) -> Failure:
     if isinstance(error, click.ClickException):
         return Failure(USAGE, _HEADLINES[OptionError], (_usage_problem(error),))
     if isinstance(error, (click.Abort, KeyboardInterrupt)):
-        return Failure(INTERRUPTED, "Interrupted before any arrangement was found", ())
+        return Failure(INTERRUPTED, "Interrupted before there was anything to show", ())
+    if isinstance(error, OSError):
+        return Failure(USAGE, "A file cannot be read or written", (_system_problem(error),))
     problem = Problem(file="", problem=f"{type(error).__name__}: {error}", remedy="")
     return Failure(OUR_FAULT, "Something went wrong inside balancer", (problem,), _REPORT_US)
 
@@ -68,3 +70,8 @@ def _usage_problem(error: click.ClickException) -> Problem:
     context = getattr(error, "ctx", None)
     command = context.command_path if context is not None else "balancer"
     return Problem(file="", problem=error.format_message(), remedy=f"See {command} --help.")
+
+
+def _system_problem(error: OSError) -> Problem:
+    file = error.filename if isinstance(error.filename, str) else ""
+    return Problem(file=file, problem=error.strerror or str(error), remedy="Check the place and who may write there.")

@@ -88,6 +88,7 @@ def _exit_code(answer: PlanAnswer) -> int:
     from balancer.arrange.results import Stop
     from balancer.commands.failures import INTERRUPTED
 
-    if answer.plan.stop is Stop.INTERRUPTED:
+    stops = (answer.plan.stop, answer.fewer.stop if answer.fewer else Stop.NONE)
+    if Stop.INTERRUPTED in stops:
         return INTERRUPTED
     return 1 if answer.has_errors else 0

@@ -25,6 +25,7 @@ ENDINGS = [
     pytest.param(InfeasibleError(["13 poles need a place, the panel has 12"], ["Add a panel."]), 1, id="infeasible"),
     pytest.param(NoAnswerInTime("nothing found in 1 s"), 3, id="limit"),
     pytest.param(SelfCheckError(["leg A differs by 2 A"]), 4, id="self-check"),
+    pytest.param(OSError(28, "No space left on device"), 2, id="system"),
     pytest.param(RuntimeError("unforeseen"), 4, id="unforeseen"),
     pytest.param(KeyboardInterrupt(), 130, id="interrupted"),
 ]

@@ -211,6 +211,19 @@ def test_save_touches_neither_inputs_nor_what_exists(run: Run, house: Path, monk
     assert other.read_text(encoding="utf-8") != "mine"
 
 
+def test_a_finished_plan_is_shown_when_what_follows_is_interrupted(
+    run: Run, house: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    planner = stand_in(monkeypatch, StandInPlanner(moves=MOVES))
+    monkeypatch.setattr(
+        "balancer.arrange.trade_landings", lambda *_: Tradeoff(points=(), flat_from=None, stop=Stop.INTERRUPTED)
+    )
+    result = run("plan", house)
+    assert len(planner.asked) == 1
+    assert result.exit_code == 130
+    assert "(proven)" in result.stdout
+
+
 @pytest.mark.parametrize(
     ("landings", "caps"), [(0, ()), (1, ()), (2, (1,)), (3, (1, 2)), (4, (1, 2, 3)), (10, (2, 5, 7))]
 )
