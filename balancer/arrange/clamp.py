@@ -10,7 +10,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from balancer.electrical.phasors import PanelCurrents
+from balancer.electrical.phasors import LegCurrents, PanelCurrents
 from balancer.electrical.scenarios import ScenarioKind, Scenarios
 from balancer.panel import Arrangement, Circuit, Installation, Leg, Role, SupplySystem, Volts
 
@@ -20,24 +20,18 @@ _LEAST_LOAD_A = 1.0
 _ENOUGH_LOAD_A = 4.0
 """From here on a load stands well clear of the tolerance."""
 
+_TELLING_A = 0.05
+"""Differences below this are none."""
+
 _METER_TOLERANCE_A = 0.5
 _KNOWN_LOAD_SHARE = 0.05
 _ASSUMED_LOAD_SHARE = 0.20
 
 _UNSTEADY_WORDS = (
-    "refriger",
-    "freez",
-    "heat",
-    "cool",
-    "air cond",
-    "pump",
-    "sump",
-    "motor",
-    "ventil",
-    "fan",
-    "compress",
+    *("refriger", "freez", "heat", "cool", "air cond", "pump", "sump", "motor", "ventil", "fan", "compress"),
+    *("wash", "laundry"),
 )
-"""Uses with a thermostat, a float switch or a motor: they start and stop by themselves."""
+"""Uses with a thermostat, a float switch, a programme or a motor: they start and stop by themselves."""
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -150,16 +144,15 @@ def _reading(
         line_a=(on * [load.line_a for load in loads])[np.newaxis],
     )
     currents = PanelCurrents(installation, scenarios).currents(as_left)
-    neutral_a = float(currents.neutral[0])
     return ClampReading(
         switch_on=labels[-1],
         circuits_on=labels,
         leg_a_a=float(currents.leg_a[0]),
         leg_b_a=float(currents.leg_b[0]),
-        neutral_a=neutral_a,
+        neutral_a=float(currents.neutral[0]),
         tolerance_a=_tolerance_a(circuits),
         is_assumed=any(circuit.load.is_assumed for circuit in circuits),
-        text=_text(installation, circuits[-1], neutral_a, before),
+        text=_text(circuits[-1], currents, before),
     )
 
 
@@ -179,12 +172,14 @@ def _tolerance_a(circuits: Sequence[Circuit]) -> float:
     return max(_METER_TOLERANCE_A, unsure_a)
 
 
-def _text(installation: Installation, added: Circuit, neutral_a: float, before: ClampReading | None) -> str:
+def _text(added: Circuit, currents: LegCurrents, before: ClampReading | None) -> str:
     if before is None:
         return f"Switch everything off but {added.label}, at full load: one leg and the neutral carry it."
     if added.poles == 2:
         return f"Switch on {added.label} as well: the legs change, the neutral stays as it was."
+    neutral_a = float(currents.neutral[0])
     change = "falls" if neutral_a < before.neutral_a else "rises"
-    if installation.panel.supply.system is SupplySystem.SPLIT:
-        return f"Switch on {added.label} as well: the neutral {change} to the difference of the legs."
-    return f"Switch on {added.label} as well: the neutral {change}."
+    # Unlike power factors, and legs not opposite to each other, leave more than the difference.
+    is_difference = abs(neutral_a - float(currents.imbalance[0])) < _TELLING_A
+    how_far = " to the difference of the legs" if is_difference else ""
+    return f"Switch on {added.label} as well: the neutral {change}{how_far}."

@@ -118,6 +118,7 @@ def along_texts(step: Step, installation: Installation, as_left: Arrangement, br
         _rating_text(step, circuit),
         _neutral_text(step, circuit),
         *_partner_texts(circuit, installation, as_left, breakers),
+        *_body_texts(step, circuit, installation),
         _metering_text(step, installation.panel),
         _bolt_text(step, installation.panel),
     ]
@@ -154,6 +155,17 @@ def _partner_texts(
         is_new_tie = tie in breakers.ties_left and tie not in breakers.ties_found
         texts.append(f"{bond}, {other.label}, {where}.{' Tie their handles.' if is_new_tie else ''}")
     return texts
+
+
+def _body_texts(step: Step, circuit: Circuit, installation: Installation) -> list[str]:
+    """Name what else hangs on the breaker body that is taken up; partners are named already."""
+    if not (step.from_ and step.with_breaker):
+        return []
+    spaces = {terminal.space for terminal in step.from_}
+    others = [c for c in installation.circuits if c is not circuit and spaces & {t.space for t in c.landing}]
+    return [
+        f"{other.label}, on the same breaker body, goes along." for other in others if not _bond_words(circuit, other)
+    ]
 
 
 def _bond_words(one: Circuit, other: Circuit) -> str:

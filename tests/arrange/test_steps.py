@@ -103,6 +103,7 @@ def test_a_tandem_body_moves_whole(steps, circuit):
     halves = [circuit("X", "2a"), circuit("Y", "2b", breaker_a=15.0)]
     found = steps(*halves, circuit("Z", "4"), X="4a", Y="4b", Z="2")
     assert all(step.how is How.MOVE_BREAKER and step.with_breaker for step in found.values())
+    assert found["X"].goes_along[0] == "Y, on the same breaker body, goes along."
 
 
 def test_a_pair_taken_out_of_a_tandem_lands_on_new_breakers(steps, circuit):
