@@ -1,9 +1,9 @@
 """The leg problem: which leg every unit is on, as plain arrays.
 
-Neutral, imbalance and heavy leg depend on legs only. Every free unit has a reference pattern (the one as found, where it
-is landed) and a *choice* for every other pattern of signs that one of its placements gives. A leg answer is a 0/1 vector
-over the choices with at most one choice a unit. In every row (a scenario in one combination of what is not known) a
-quantity is the magnitude of ``offset + effects @ answer``.
+Neutral, imbalance and heavy leg depend on legs only. Every free unit has a reference pattern (the one as found, where
+it is landed) and a *choice* for every other pattern of signs that one of its placements gives. A leg answer is a 0/1
+vector over the choices with at most one choice a unit. In every row (a scenario in one combination of what is not
+known) a quantity is the magnitude of ``offset + effects @ answer``.
 """
 
 from __future__ import annotations
@@ -43,7 +43,7 @@ class Rows:
 
     def values(self, answer: Answer) -> FloatMatrix:
         """Magnitude [A] in every row."""
-        return np.abs(self.offset + self.effects @ answer.astype(float))
+        return np.asarray(np.abs(self.offset + self.effects @ answer.astype(float)))
 
     def peak(self, answer: Answer) -> float:
         """Highest magnitude [A] over all rows."""
@@ -128,7 +128,7 @@ class LegProblem:
 
     @cached_property
     def imbalance(self) -> Rows:
-        """The difference of the legs, projected on the direction of their sum: an upper bound of the true difference."""
+        """The legs' difference, projected on the direction of their sum: an upper bound of the true difference."""
         parts = []
         for case in self.cases:
             magnitude = np.abs(case.total)
