@@ -21,7 +21,7 @@ _MOST_EFFORT = 100.0
 _WATTS_BELONG = "where these are watts, put them into {}; else write amps, such as 12.5"
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class Column(Generic[Value]):
     """One column; `default` says what a blank cell means."""
 
