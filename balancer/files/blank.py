@@ -21,7 +21,7 @@ _EXAMPLES: tuple[dict[str, str], ...] = (
     {
         "circuit": "range",
         "description": "Kitchen range",
-        "space": "5-7",
+        "space": "6-8",
         "volts": "120/240",
         "load_w": "7200",
         "load_120_a": "2.5",

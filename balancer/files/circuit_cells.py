@@ -73,6 +73,11 @@ def _load_cells(circuit: Circuit) -> dict[str, str]:
         parts = {c.LOAD_A: _number(load.line_a), c.PF: _power_factor(load.line_pf)}
         if load.neutral_a:
             parts |= {c.LOAD_120_A: _number(load.neutral_a), c.POLE_120: load.neutral_pole or ""}
+    # Figures that were assumed stay blank, to be assumed again.
+    if load.is_assumed:
+        parts.pop(c.LOAD_A, None)
+    if load.is_pf_assumed:
+        parts.pop(c.PF, None)
     return {column.name: text for column, text in parts.items()}
 
 

@@ -8,7 +8,7 @@ from balancer.files.source import FilePath
 from balancer.files.supply_table import read_supply
 from balancer.files.toml_source import read_toml
 from balancer.files.toml_table import TomlTable
-from balancer.panel import MAX_SPACES, Panel, ordinary_spaces
+from balancer.panel import MAX_SPACES, Panel, Supply, ordinary_spaces
 
 PANEL_KEYS = (
     *("name", "spaces", "main_a", "bus_a", "feed", "tandem_spaces", "plug_on_neutral", "bolt_on", "reserved"),
@@ -54,9 +54,14 @@ def _read_panel(root: TomlTable) -> Panel:
     root.refuse_unknown(("panel", "supply"))
     if "panel" not in root:
         root.report("panel", "the table [panel] is missing", "begin with a line [panel] and, say, spaces = 40 below it")
-    table = root.table("panel")
+    panel, supply = root.table("panel"), root.table("supply")
+    fed_by = Supply() if supply is None else read_supply(supply)
+    return Panel(spaces=ordinary_spaces(MAX_SPACES)) if panel is None else _read_panel_table(panel, fed_by)
+
+
+def _read_panel_table(table: TomlTable, supply: Supply) -> Panel:
     table.refuse_unknown(PANEL_KEYS)
-    spaces = read_spaces(table) if "panel" in root else ordinary_spaces(MAX_SPACES)
+    spaces = read_spaces(table)
     numbers = [space.number for space in spaces]
     crossing_in = table.number("crossing_in", _MOST_CROSSING_IN, is_zero_allowed=True)
     return Panel(
@@ -71,5 +76,5 @@ def _read_panel(root: TomlTable) -> Panel:
         reserved=table.spaces("reserved", numbers) or frozenset(),
         crossing_in=Panel.crossing_in if crossing_in is None else crossing_in,
         stab_a=table.number("stab_a", _MOST_A),
-        supply=read_supply(root.table("supply")),
+        supply=supply,
     )

@@ -52,6 +52,8 @@ def _listed_spaces(table: TomlTable) -> tuple[Space, ...]:
         if key in table:
             table.report(key, "stands beside [[panel.space]], which says it already", "keep one of the two")
     entries = table.tables(SPACE_LIST)
+    if entries is None:
+        return ordinary_spaces(MAX_SPACES)
     spaces = sorted(filter(None, map(_one_space, entries)), key=lambda space: space.number)
     stated = table.integer("spaces", 1, MAX_SPACES)
     if stated is not None and stated != len(entries):

@@ -66,6 +66,7 @@ def _key_lines(text: str) -> dict[KeyPath, int]:
     for number, line in enumerate(text.splitlines(), 1):
         if header := _TABLE.match(line):
             table = _names(header[2])
+            lines.setdefault(table, number)
             if header[1] == "[[":
                 counts[table] = counts.get(table, -1) + 1
                 table = (*table, counts[table])

@@ -28,22 +28,24 @@ class TomlTable:
         """Give the whole file as one table."""
         return cls(source, (), source.content, problems)
 
-    def table(self, key: str) -> TomlTable:
-        """Open the table under a key; an empty one where it is missing or no table."""
-        content = self._content.get(key, {})
+    def table(self, key: str) -> TomlTable | None:
+        """Open the table under a key."""
+        content = self._content.get(key)
+        if content is None:
+            return None
         if not isinstance(content, dict):
             self.report(key, "is not a table", f"write [{key}] on a line of its own and its keys below")
-            content = {}
+            return None
         return TomlTable(self._source, (*self.path, key), content, self._problems)
 
-    def tables(self, key: str) -> list[TomlTable]:
+    def tables(self, key: str) -> list[TomlTable] | None:
         """Open the list of tables under a key."""
-        contents = self._content.get(key, [])
+        contents = self._content.get(key)
         if not isinstance(contents, list) or not all(isinstance(content, dict) for content in contents):
             self.report(
                 key, "is not a list of tables", f"write [[{'.'.join((*map(str, self.path), key))}]] before each"
             )
-            return []
+            return None
         return [
             TomlTable(self._source, (*self.path, key, index), content, self._problems)
             for index, content in enumerate(contents)
@@ -79,7 +81,8 @@ class TomlTable:
         if value is None:
             return None
         remedy = f"write a plain number up to {most:g}, without quotation marks"
-        if isinstance(value, bool) or not isinstance(value, int | float) or not math.isfinite(value):
+        is_number = isinstance(value, int | float) and not isinstance(value, bool)
+        if not is_number or (isinstance(value, float) and not math.isfinite(value)):
             self.report(key, "is not a number", remedy)
         elif value < 0 or (value == 0 and not is_zero_allowed):
             self.report(key, "is not above 0", remedy)
@@ -139,4 +142,8 @@ class TomlTable:
 def _toml_text(value: object) -> str:
     if isinstance(value, bool):
         return "true" if value else "false"
-    return str(value)
+    try:
+        return str(value)
+    # A hexadecimal number may be longer than Python cares to write out.
+    except ValueError:
+        return "a number too long to show"
