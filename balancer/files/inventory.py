@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import dataclass
 
-from balancer.errors import InputError, Problem
+from balancer.errors import InputError
 from balancer.files.cells import read_volts
 from balancer.files.circuit_row import CircuitBuilder, check_row, read_row_load
 from balancer.files.columns import COLUMNS, SPACE, VOLTS
@@ -13,10 +13,11 @@ from balancer.files.group_checks import check_shared_neutrals, check_unique_labe
 from balancer.files.inventory_row import InventoryRow
 from balancer.files.landing_checks import check_collisions, check_place
 from balancer.files.loads import LOAD_COLUMNS
-from balancer.files.panel_file import ordinary_panel, read_panel_file
+from balancer.files.panel_file import ordinary_panel, panel_with_problems
 from balancer.files.problems import Place, ProblemList
 from balancer.files.quantities import Cell, CellError
-from balancer.files.sheet import COMMENT, Sheet, read_sheet
+from balancer.files.sheet import COMMENT, Sheet
+from balancer.files.sheet_file import read_sheet
 from balancer.files.source import FilePath, file_name
 from balancer.files.table import Table, build_table, header_key
 from balancer.files.words import did_you_mean, nearest_word
@@ -33,7 +34,7 @@ def read_inventory(path: FilePath, panel_path: FilePath | None = None) -> Instal
     InputError
         With every problem of both files.
     """
-    panel, panel_problems = _read_panel_or_problems(panel_path)
+    panel, panel_problems = (None, ()) if panel_path is None else panel_with_problems(panel_path)
     try:
         inventory = _read_rows(path)
         panel = panel if panel is not None or panel_path is not None else _assumed_panel(inventory.rows)
@@ -42,7 +43,7 @@ def read_inventory(path: FilePath, panel_path: FilePath | None = None) -> Instal
         inventory.problems.raise_if_any()
     except InputError as error:
         raise InputError((*error.problems, *panel_problems)) from None
-    if panel is None:
+    if panel is None or panel_problems:
         raise InputError(panel_problems)
     builder = CircuitBuilder(inventory.rows)
     circuits = tuple(builder.build(row, load) for row, load in zip(inventory.rows, loads, strict=True))
@@ -53,15 +54,6 @@ def read_inventory(path: FilePath, panel_path: FilePath | None = None) -> Instal
         columns=tuple(name for name in inventory.table.columns if name),
         notices=(*_notices(inventory, panel), *_load_notices(inventory.rows, circuits)),
     )
-
-
-def _read_panel_or_problems(path: FilePath | None) -> tuple[Panel | None, tuple[Problem, ...]]:
-    if path is None:
-        return None, ()
-    try:
-        return read_panel_file(path), ()
-    except InputError as error:
-        return None, error.problems
 
 
 @dataclass(frozen=True)

@@ -19,7 +19,6 @@ from balancer.files.columns import (
     POLE_120,
     USE,
     VOLTS,
-    Column,
 )
 from balancer.files.inventory_row import InventoryRow
 from balancer.panel import Load, Pole, PowerFactor, SupplySystem, Volts
@@ -52,9 +51,12 @@ def read_load(row: InventoryRow, system: SupplySystem | None) -> Load:
     """
     _refuse_contradictions(row)
     volts = row.get(VOLTS)
-    if volts is None or row.is_faulty(PF, USE, BREAKER_A, POLE_120, *LOAD_COLUMNS):
+    if volts is None:
         return Load()
+    _refuse_tiny_watts(row, volts)
     _refuse_parts_without_neutral(row, volts)
+    if row.is_faulty(PF, USE, BREAKER_A, POLE_120, *LOAD_COLUMNS):
+        return Load()
     load = _measured_load(row, volts, system) if row.has(*_MEASURED) else _given_load(row, volts)
     if not load.is_assumed:
         _refuse_far_above_breaker(row, load)
@@ -84,26 +86,26 @@ def _refuse_parts_without_neutral(row: InventoryRow, volts: Volts) -> None:
         row.report(POLE_120, "there is no 120 V part to put on a pole", "give load_120_a or load_120_w, or clear this")
 
 
-@dataclass(frozen=True)
-class _Amps:
-    """Amps [A] of a part, and the column that gave them; None for a default."""
-
-    value: float
-    column: Column[float] | None
+def _refuse_tiny_watts(row: InventoryRow, volts: Volts) -> None:
+    for column, amps_column in ((LOAD_W, LOAD_A), (LOAD_VA, LOAD_A), (LOAD_120_W, LOAD_120_A)):
+        value = row.get(column)
+        least = _LIKELY_LEAST_W[1 if column is LOAD_120_W else volts.poles]
+        if value is not None and 0.0 < value < least:
+            remedy = f"write {1000.0 * value:g} if these are thousands; put amps into {amps_column.name}"
+            row.report(column, "is too little for a circuit at full use", remedy)
 
 
 def _given_load(row: InventoryRow, volts: Volts) -> Load:
     power_factor, is_pf_assumed = _power_factor(row, volts)
-    main = _main_part(row, volts, power_factor)
-    if main is None:
-        return Load()
-    is_assumed = main.column is None
+    main_a = _main_part_a(row, volts, power_factor)
+    is_assumed = not row.has(*_FULL_LOADS)
     if volts.poles == 1:
-        return Load(neutral_a=main.value, neutral_pf=power_factor, is_assumed=is_assumed, is_pf_assumed=is_pf_assumed)
+        return Load(neutral_a=main_a, neutral_pf=power_factor, is_assumed=is_assumed, is_pf_assumed=is_pf_assumed)
+    watts_120 = row.get(LOAD_120_W)
     return Load(
-        neutral_a=_part_120_a(row),
+        neutral_a=row.get(LOAD_120_A) or 0.0 if watts_120 is None else watts_120 / _NEUTRAL_PART_V,
         neutral_pole=row.get(POLE_120),
-        line_a=main.value,
+        line_a=main_a,
         line_pf=power_factor,
         is_assumed=is_assumed,
         is_pf_assumed=is_pf_assumed,
@@ -119,39 +121,22 @@ def _power_factor(row: InventoryRow, volts: Volts) -> tuple[PowerFactor, bool]:
     return (PowerFactor(), False) if default is None else (default, True)
 
 
-def _main_part(row: InventoryRow, volts: Volts, power_factor: PowerFactor) -> _Amps | None:
-    """Amps of the main part: I = P/(V cos phi) or S/V at nominal volts, else the shipped default; None is reported."""
+def _main_part_a(row: InventoryRow, volts: Volts, power_factor: PowerFactor) -> float:
+    """Amps [A] of the main part: I = P/(V cos phi) or S/V at nominal volts, else the shipped default.
+
+    Without any of them that is reported, and the result is 0.
+    """
     load_a, load_w, load_va = row.get(LOAD_A), row.get(LOAD_W), row.get(LOAD_VA)
     if load_a is not None:
-        return _Amps(load_a, LOAD_A)
+        return load_a
     if load_w is not None:
-        _refuse_tiny_watts(row, LOAD_W, load_w, volts.poles)
-        return _Amps(load_w / (NOMINAL_V[volts] * power_factor.value), LOAD_W)
+        return load_w / (NOMINAL_V[volts] * power_factor.value)
     if load_va is not None:
-        _refuse_tiny_watts(row, LOAD_VA, load_va, volts.poles)
-        return _Amps(load_va / NOMINAL_V[volts], LOAD_VA)
+        return load_va / NOMINAL_V[volts]
     assumed = default_load_a(row.get(USE) or "", row.get(BREAKER_A), volts)
     if assumed is None:
         row.report(LOAD_A, "no load, and nothing to assume it from", "give load_a, load_w or load_va, or breaker_a")
-        return None
-    return _Amps(assumed, None)
-
-
-def _part_120_a(row: InventoryRow) -> float:
-    """Amps [A] of the 120 V part, at unity power factor."""
-    watts = row.get(LOAD_120_W)
-    if watts is None:
-        return row.get(LOAD_120_A) or 0.0
-    _refuse_tiny_watts(row, LOAD_120_W, watts, poles=1)
-    return watts / _NEUTRAL_PART_V
-
-
-def _refuse_tiny_watts(row: InventoryRow, column: Column[float], value: float, poles: int) -> None:
-    if 0.0 < value < _LIKELY_LEAST_W[poles]:
-        thousandfold = f"{1000.0 * value:g}"
-        amps_column = LOAD_120_A.name if column is LOAD_120_W else LOAD_A.name
-        remedy = f"write {thousandfold} if these are thousands; put amps into {amps_column}"
-        row.report(column, "is too little for a circuit at full use", remedy)
+    return assumed or 0.0
 
 
 def _refuse_far_above_breaker(row: InventoryRow, load: Load) -> None:

@@ -2,6 +2,9 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
+from balancer.errors import InputError, Problem
 from balancer.files.panel_spaces import SPACE_LIST, read_spaces
 from balancer.files.problems import ProblemList
 from balancer.files.source import FilePath
@@ -30,11 +33,24 @@ def read_panel_file(path: FilePath) -> Panel:
     InputError
         With everything that is wrong in it.
     """
-    source = read_toml(path)
+    panel, problems = panel_with_problems(path)
+    if problems or panel is None:
+        raise InputError(problems)
+    return panel
+
+
+def panel_with_problems(path: FilePath) -> tuple[Panel | None, tuple[Problem, ...]]:
+    """Read a panel file as far as it goes, so that the inventory can be held against it all the same.
+
+    The panel is None where its spaces or its supply are in doubt; then there are problems.
+    """
+    try:
+        source = read_toml(path)
+    except InputError as error:
+        return None, error.problems
     problems = ProblemList(source.file)
     panel = _read_panel(TomlTable.root(source, problems))
-    problems.raise_if_any()
-    return panel
+    return panel, problems.in_line_order
 
 
 def ordinary_panel(highest_space: int, poles: int) -> Panel:
@@ -49,23 +65,23 @@ def ordinary_panel(highest_space: int, poles: int) -> Panel:
     return Panel(spaces=ordinary_spaces(count), is_assumed=True)
 
 
-def _read_panel(root: TomlTable) -> Panel:
-    """Read both tables; where anything is reported the panel means nothing."""
+def _read_panel(root: TomlTable) -> Panel | None:
     root.refuse_unknown(("panel", "supply"))
     if "panel" not in root:
         root.report("panel", "the table [panel] is missing", "begin with a line [panel] and, say, spaces = 40 below it")
-    panel, supply = root.table("panel"), root.table("supply")
-    fed_by = Supply() if supply is None else read_supply(supply)
-    return Panel(spaces=ordinary_spaces(MAX_SPACES)) if panel is None else _read_panel_table(panel, fed_by)
+    panel_table, supply_table = root.table("panel"), root.table("supply")
+    panel = None if panel_table is None else _read_panel_table(panel_table)
+    supply = Supply() if supply_table is None else read_supply(supply_table)
+    return None if panel is None or supply is None else replace(panel, supply=supply)
 
 
-def _read_panel_table(table: TomlTable, supply: Supply) -> Panel:
+def _read_panel_table(table: TomlTable) -> Panel | None:
     table.refuse_unknown(PANEL_KEYS)
     spaces = read_spaces(table)
-    numbers = [space.number for space in spaces]
+    numbers = range(1, MAX_SPACES + 1) if spaces is None else [space.number for space in spaces]
     crossing_in = table.number("crossing_in", _MOST_CROSSING_IN, is_zero_allowed=True)
-    return Panel(
-        spaces=spaces,
+    panel = Panel(
+        spaces=spaces or (),
         name=table.text("name") or "",
         main_a=table.number("main_a", _MOST_A),
         bus_a=table.number("bus_a", _MOST_A),
@@ -76,5 +92,5 @@ def _read_panel_table(table: TomlTable, supply: Supply) -> Panel:
         reserved=table.spaces("reserved", numbers) or frozenset(),
         crossing_in=Panel.crossing_in if crossing_in is None else crossing_in,
         stab_a=table.number("stab_a", _MOST_A),
-        supply=supply,
     )
+    return None if spaces is None else panel

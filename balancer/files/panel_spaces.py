@@ -15,26 +15,30 @@ _LEAST_SPACES = 2
 _COLUMNS = {"left": 0, "right": 1, "0": 0, "1": 1}
 
 
-def read_spaces(table: TomlTable) -> tuple[Space, ...]:
-    """Read the spaces of the table [panel]; where anything is reported they mean nothing, but there are some."""
+def read_spaces(table: TomlTable) -> tuple[Space, ...] | None:
+    """Read the spaces of the table [panel]; None where what is wrong leaves them in doubt."""
     return _listed_spaces(table) if SPACE_LIST in table else _counted_spaces(table)
 
 
-def _counted_spaces(table: TomlTable) -> tuple[Space, ...]:
+def _counted_spaces(table: TomlTable) -> tuple[Space, ...] | None:
     count = table.integer("spaces", _LEAST_SPACES, MAX_SPACES)
     if "spaces" not in table:
         table.report("spaces", "the number of spaces is missing", "write, say, spaces = 40")
     numbering = table.word("numbering", ("across", "down"))
-    if count is None:
-        return ordinary_spaces(MAX_SPACES)
-    return ordinary_spaces(count, _row_legs(table, (count + 1) // 2), numbered_down=numbering == "down")
+    legs = None if count is None else _row_legs(table, (count + 1) // 2)
+    if count is None or legs is None or (numbering is None and "numbering" in table):
+        return None
+    return ordinary_spaces(count, legs, numbered_down=numbering == "down")
 
 
-def _row_legs(table: TomlTable, rows: int) -> str:
+def _row_legs(table: TomlTable, rows: int) -> str | None:
     """Legs of the rows from the top: a letter for each, or a pattern that repeats; "" for the ordinary ones."""
-    text = (table.text("row_legs") or "").upper().replace(" ", "")
-    if not text:
+    if "row_legs" not in table:
         return ""
+    text = table.text("row_legs")
+    if text is None:
+        return None
+    text = text.upper().replace(" ", "")
     if "C" in text and set(text) <= set("ABC"):
         table.report("row_legs", "has a third leg", ONLY_TWO_LEGS)
     elif set(text) != set("AB"):
@@ -44,23 +48,22 @@ def _row_legs(table: TomlTable, rows: int) -> str:
         table.report("row_legs", f"has {len(text)} letters for {rows} rows", remedy)
     else:
         return text
-    return ""
+    return None
 
 
-def _listed_spaces(table: TomlTable) -> tuple[Space, ...]:
+def _listed_spaces(table: TomlTable) -> tuple[Space, ...] | None:
     for key in ("row_legs", "numbering"):
         if key in table:
             table.report(key, "stands beside [[panel.space]], which says it already", "keep one of the two")
     entries = table.tables(SPACE_LIST)
     if entries is None:
-        return ordinary_spaces(MAX_SPACES)
+        return None
     spaces = sorted(filter(None, map(_one_space, entries)), key=lambda space: space.number)
     stated = table.integer("spaces", 1, MAX_SPACES)
     if stated is not None and stated != len(entries):
         table.report("spaces", f"but [[panel.space]] stands {len(entries)} times", "correct it, or leave it out")
-    if len(spaces) == len(entries):
-        _check_map(table, spaces)
-    return tuple(spaces) or ordinary_spaces(MAX_SPACES)
+    is_sound = len(spaces) == len(entries) and _check_map(table, spaces)
+    return tuple(spaces) if is_sound else None
 
 
 def _one_space(table: TomlTable) -> Space | None:
@@ -93,13 +96,16 @@ def _leg(table: TomlTable) -> Leg | None:
     return None if word is None else Leg(word)
 
 
-def _check_map(table: TomlTable, spaces: Sequence[Space]) -> None:
+def _check_map(table: TomlTable, spaces: Sequence[Space]) -> bool:
+    """Report spaces that no panel can have; gives whether there are none."""
     if not spaces:
         table.report(SPACE_LIST, "lists no space", "write [[panel.space]] before every space")
-        return
-    if len({space.number for space in spaces}) < len(spaces):
+    elif len({space.number for space in spaces}) < len(spaces):
         table.report(SPACE_LIST, "two spaces have the same number", "give every space its own")
-    if len({(space.column, space.row) for space in spaces}) < len(spaces):
+    elif len({(space.column, space.row) for space in spaces}) < len(spaces):
         table.report(SPACE_LIST, "two spaces are in the same column and row", "give every space its own place")
-    if {space.leg for space in spaces} != set(Leg):
+    elif {space.leg for space in spaces} != set(Leg):
         table.report(SPACE_LIST, "all spaces are on one leg", "write the leg of every space, A or B")
+    else:
+        return True
+    return False

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
 from dataclasses import dataclass, field
 
 from balancer.errors import InputError, Problem
@@ -42,8 +41,3 @@ class ProblemList:
 def one_problem(file: str, problem: str, remedy: str, line: int | None = None) -> InputError:
     """Make the error of a file that cannot be read any further."""
     return InputError([Problem(file, problem, remedy, line=line)])
-
-
-def merged(problem_lists: Sequence[Sequence[Problem]]) -> tuple[Problem, ...]:
-    """Join the problems of several files, file after file."""
-    return tuple(problem for problems in problem_lists for problem in problems)

@@ -6,7 +6,7 @@ import re
 
 from balancer.electrical.profiles import PROFILE_COLUMNS, UseProfiles, profiles_from_rows
 from balancer.files.problems import Place, ProblemList
-from balancer.files.sheet import read_sheet
+from balancer.files.sheet_file import read_sheet
 from balancer.files.source import FilePath
 from balancer.files.table import Table, build_table
 

@@ -11,7 +11,7 @@ from balancer.electrical.scenario_sets import share_scenarios
 from balancer.electrical.scenarios import FloatArray, Scenarios
 from balancer.files.problems import Place, ProblemList
 from balancer.files.quantities import Cell, CellError, read_number, refuse
-from balancer.files.sheet import read_sheet
+from balancer.files.sheet_file import read_sheet
 from balancer.files.source import FilePath
 from balancer.files.table import Table, TableRow, build_table
 from balancer.files.words import did_you_mean

@@ -23,11 +23,11 @@ _TRIPS_PER_LEG = ("inverter", "generator")
 _OTHER_SUPPLY = re.compile(r"(three|3)[\s-]*ph|delta|high[\s-]*leg|wild|stinger|277|347|480|600")
 
 
-def read_supply(table: TomlTable) -> Supply:
-    """Read what feeds the panel; where anything is reported the supply means nothing."""
+def read_supply(table: TomlTable) -> Supply | None:
+    """Read what feeds the panel; None where what is wrong leaves the system in doubt."""
     table.refuse_unknown(SUPPLY_KEYS)
     system = _system(table)
-    return Supply(
+    supply = Supply(
         system=system or SupplySystem.SPLIT,
         leading_leg=_leading_leg(table, system),
         is_trip_per_leg=table.word("source", ("utility", *_TRIPS_PER_LEG)) in _TRIPS_PER_LEG,
@@ -37,6 +37,7 @@ def read_supply(table: TomlTable) -> Supply:
         neutral_wire=_wire(table, "neutral_wire"),
         length_ft=table.number("length_ft", _MOST_FT),
     )
+    return None if system is None else supply
 
 
 def _system(table: TomlTable) -> SupplySystem | None:

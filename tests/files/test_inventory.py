@@ -290,6 +290,14 @@ def test_all_problems_of_both_files_come_at_once_in_order(problems_of: ProblemsO
     ]
 
 
+def test_inventory_is_held_against_what_of_the_panel_file_is_sound(problems_of: ProblemsOf) -> None:
+    inventory = "circuit,space,volts,load_a\nfan,43,120,4\n"
+    sound = problems_of(inventory, "[panel]\nspaces = 42\nmain_a = -1\n")
+    in_doubt = problems_of(inventory, "[panel]\nspaces = 420\n")
+    assert [problem.column for problem in sound] == ["space", "main_a"]
+    assert [problem.column for problem in in_doubt] == ["spaces"]
+
+
 def test_missing_files_are_told_together(tmp_path: Path) -> None:
     with pytest.raises(InputError) as caught:
         read_inventory(tmp_path / "none.csv", tmp_path / "none.toml")

@@ -165,6 +165,11 @@ def test_load_that_cannot_be_meant_is_one_problem(
     assert only.remedy
 
 
+def test_tiny_watts_are_told_beside_a_power_factor_that_cannot_be(problems_of: ProblemsOf) -> None:
+    problems = problems_of(inventory(load_w="0.12", pf="1.2"))
+    assert [problem.column for problem in problems] == ["pf", "load_w"]
+
+
 def test_measured_amps_beside_loads_contradict_them(problems_of: ProblemsOf) -> None:
     problems = problems_of(inventory(volts="120/240", amps_first="9", amps_second="8", load_a="5"))
     assert {problem.problem for problem in problems} == {"measured amps stand beside load_a"}

@@ -7,7 +7,8 @@ from hypothesis import example, given
 from hypothesis import strategies as st
 
 from balancer.errors import InputError
-from balancer.files.sheet import BLANKS, FORMULA_STARTS, Sheet, clean, guard, read_sheet
+from balancer.files.sheet import BLANKS, FORMULA_STARTS, Sheet, clean, guard
+from balancer.files.sheet_file import read_sheet
 
 
 def sheet_of(tmp_path: Path, data: str | bytes) -> Sheet:

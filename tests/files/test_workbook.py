@@ -8,7 +8,7 @@ import pytest
 
 from balancer.errors import InputError
 from balancer.files import read_inventory
-from balancer.files.sheet import read_sheet
+from balancer.files.sheet_file import read_sheet
 from balancer.files.workbook import cell_text
 
 openpyxl = pytest.importorskip("openpyxl")
