@@ -40,7 +40,7 @@ def read_bytes(path: FilePath) -> bytes:
         reason = getattr(error, "strerror", None) or str(error)
         raise one_problem(file_name(path), f"cannot be read: {reason}", "check the name and its permissions") from None
     if not data.strip():
-        raise one_problem(file_name(path), "is empty", "write a header line and a line for every circuit")
+        raise one_problem(file_name(path), "is empty", "check the name, and that it was saved")
     return data
 
 
