@@ -280,3 +280,28 @@ def _seat_counter(
         for choice in choices
     ]
     return Counter(sum(references.values()), np.array(costs, dtype=np.int64), cap, f"spaces on leg {leg}")
+
+
+def mirror_choice(problem: LegProblem, rows: Sequence[Rows], counters: Sequence[Counter]) -> int | None:
+    """Choice that may be pinned because exchanging the legs changes no row and no counter; None where something does.
+
+    Exchanging the legs turns every answer into its complement. That leaves a row's magnitude alone where the row's
+    middle (all units half on each leg) is zero, and the counters where each has its mirror image among them.
+    """
+    if not problem.choices or any(len(group) > 1 for group in problem.groups):
+        return None
+    for each in rows:
+        middle = each.offset + each.effects.sum(axis=1) / 2.0
+        if each.name is not ObjectiveName.HEAVY_LEG and np.abs(middle).max(initial=0.0) > _NO_CURRENT_A:
+            return None
+    if any(
+        np.abs(case.difference + case.effects.sum(axis=1) / 2.0).max(initial=0.0) > _NO_CURRENT_A
+        for case in problem.cases
+    ):
+        return None
+    known = {(counter.base, counter.cap, tuple(counter.costs.tolist())) for counter in counters}
+    mirrored = {(base + sum(costs), cap, tuple(-cost for cost in costs)) for base, cap, costs in known}
+    if known != mirrored:
+        return None
+    weight = np.sum([np.abs(each.effects).sum(axis=0) for each in rows], axis=0)
+    return int(np.argmax(weight))

@@ -173,9 +173,9 @@ class LegSearch:
         self._order = [self.problem.groups[g] for g in self._sequence]
 
     def _relevant(self, rows: _Limits) -> _Limits:
-        """Leave out the rows that no answer can break."""
+        """Leave out the capped rows that no answer can break; the objective's limit falls, so all its rows stay."""
         reach = np.abs(rows.offset + self._centre.sum(axis=0)) + self._half.sum(axis=0)
-        keep = reach > rows.limit(self._best)
+        keep = rows.is_objective | (reach > rows.fixed_limit)
         self._centre, self._half = self._centre[:, keep], self._half[:, keep]
         return _Limits(rows.offset[keep], rows.effects[keep], rows.fixed_limit[keep], rows.is_objective[keep])
 

@@ -1,0 +1,151 @@
+"""Why nothing fits: the constraints that conflict, in the user's words, found by releasing them one by one."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+from ortools.sat.python import cp_model
+
+from balancer.arrange.clock import Clock
+from balancer.arrange.results import Options
+from balancer.arrange.seating import SeatModel
+from balancer.arrange.seats import Hold, build_units
+from balancer.arrange.solve import SolveStatus, solve
+from balancer.errors import InfeasibleError, NoAnswerInTime
+from balancer.panel import Installation, Role, format_landing
+
+_CHECK_WORK_S = 10.0
+
+
+@dataclass(frozen=True)
+class _Constraint:
+    """Something that could be released: what it is, what it says and what to do about it."""
+
+    hold: Hold | None
+    label: str
+    text: str
+    remedy: str
+
+
+def explain_no_seats(installation: Installation, options: Options, clock: Clock) -> InfeasibleError:
+    """Name a smallest set of constraints that leaves no room for every circuit.
+
+    Raises
+    ------
+    NoAnswerInTime
+        When the clock ran out before a reason was found.
+    """
+    shortage = _shortage(installation)
+    if shortage is not None:
+        return shortage
+    constraints = _constraints(installation, options)
+    if not _fits(installation, options, [], clock):
+        return InfeasibleError(
+            ["the circuits do not fit: two poles and shared-neutral pairs need adjacent spaces on opposite legs"],
+            ["free adjacent spaces, or use a larger panel or a subpanel"],
+        )
+    conflict = _smallest_conflict(installation, options, constraints, clock)
+    return InfeasibleError([c.text for c in conflict], [c.remedy for c in conflict])
+
+
+def _shortage(installation: Installation) -> InfeasibleError | None:
+    """More poles than spaces: the plainest reason."""
+    panel = installation.panel
+    needed = sum(c.poles for c in installation.circuits if not c.landing and c.role is not Role.SPARE)
+    filled = {
+        t.space
+        for c in installation.circuits
+        for t in c.landing
+        if c.role is not Role.SPARE and t.space not in panel.reserved
+    }
+    usable = len(panel.spaces) - len(panel.reserved)
+    total = needed + len(filled)
+    if total <= usable:
+        return None
+    reserved = f" ({len(panel.reserved)} more are reserved)" if panel.reserved else ""
+    return InfeasibleError(
+        [f"the breakers need {total} spaces and the panel has {usable} to use{reserved}"],
+        ["use a larger panel or a subpanel, combine circuits, or leave some out"],
+    )
+
+
+def _constraints(installation: Installation, options: Options) -> list[_Constraint]:
+    """Everything that could be released, what is easiest to release last."""
+    panel = installation.panel
+    found = []
+    for circuit in installation.circuits:
+        place = format_landing(circuit.landing)
+        if circuit.is_fixed or circuit.role.is_device:
+            text = f'"{circuit.label}" is fixed in space {place}'
+            found.append(_Constraint(Hold.FIXED, circuit.label, text, "release it if it may move"))
+    panel_wide = [
+        (bool(panel.reserved), Hold.RESERVED, "some spaces are reserved", "free a reserved space"),
+        (
+            any(t.half for c in installation.circuits for t in c.landing),
+            Hold.TANDEM,
+            "half-width breakers may go only where tandem_spaces allows them",
+            "check which spaces take half-width breakers",
+        ),
+        (
+            bool(panel.plug_on_neutral),
+            Hold.PLUG_ON,
+            "plug-on-neutral breakers need a space beside the neutral bar",
+            "use a breaker with a neutral pigtail",
+        ),
+        (
+            bool(panel.bolt_on),
+            Hold.BOLT_ON,
+            "bolt-on breakers fit bolted spaces only",
+            "use a breaker made for the space",
+        ),
+        (
+            panel.stab_a is not None,
+            Hold.STAB,
+            f"the handle ratings of one row may add up to {panel.stab_a or 0:g} A at most (stab_a)",
+            "check the limit on the panel's label",
+        ),
+    ]
+    found += [_Constraint(hold, "", text, remedy) for applies, hold, text, remedy in panel_wide if applies]
+    for circuit in installation.circuits:
+        if circuit.slack_in is not None and circuit.landing and not options.splice:
+            text = f'the conductor of "{circuit.label}" reaches {circuit.slack_in:g} in from space'
+            text = f"{text} {format_landing(circuit.landing)}"
+            if circuit.slack_in < 1000:
+                found.append(_Constraint(Hold.REACH, circuit.label, text, "allow splices with --splice"))
+    if options.max_landings is not None:
+        text = f"at most {options.max_landings} landings may change"
+        found.append(_Constraint(None, "", text, "allow more with --landings"))
+    return found
+
+
+def _fits(installation: Installation, options: Options, kept: Sequence[_Constraint], clock: Clock) -> bool:
+    """Whether every circuit finds a seat while only the kept constraints hold."""
+    holding = {(c.hold, c.label) for c in kept}
+    everything = [(c.hold, c.label) for c in _constraints(installation, options) if c.hold is not None]
+    ignored = frozenset((hold, label) for hold, label in everything if (hold, label) not in holding)
+    units = build_units(installation, options, ignored)
+    if any(not unit.placements and not unit.is_optional for unit in units):
+        return False
+    model = cp_model.CpModel()
+    stab_a = installation.panel.stab_a if (Hold.STAB, "") in holding else None
+    seats = SeatModel(model, stab_a, units)
+    if options.max_landings is not None and (None, "") in holding:
+        model.add(seats.landings_changed <= options.max_landings)
+    status = solve(model, (), clock, _CHECK_WORK_S).status
+    if status is SolveStatus.UNKNOWN:
+        message = "the limit was reached while looking for what is in the way"
+        raise NoAnswerInTime(message)
+    return status.has_answer
+
+
+def _smallest_conflict(
+    installation: Installation, options: Options, constraints: Sequence[_Constraint], clock: Clock
+) -> list[_Constraint]:
+    """Drop every constraint without which there is still no room: what is left conflicts, and each is needed for it."""
+    conflict = list(constraints)
+    for constraint in constraints:
+        rest = [c for c in conflict if c is not constraint]
+        if not _fits(installation, options, rest, clock):
+            conflict = rest
+    return conflict

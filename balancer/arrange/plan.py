@@ -1,0 +1,241 @@
+"""From an inventory to a proven plan: build the problem, close the objectives, check the answer without the solver."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from balancer.arrange.clock import Clock
+from balancer.arrange.conflict import explain_no_seats
+from balancer.arrange.incumbent import Heuristic
+from balancer.arrange.leg_model import LegModel
+from balancer.arrange.legs import Answer, Counter, build_leg_problem
+from balancer.arrange.results import Aim, ObjectiveName, ObjectiveResult, Options, Plan, ProgressListener
+from balancer.arrange.search import Cap
+from balancer.arrange.seating import Seater, Seating
+from balancer.arrange.seats import build_units, landing_effort
+from balancer.arrange.solve import SolveStatus
+from balancer.arrange.stages import READINGS_TOLERANCE_A, SCENARIO_TOLERANCE_A, Stages
+from balancer.arrange.verify import verify_plan
+from balancer.electrical.phasors import PanelCurrents
+from balancer.electrical.scenarios import ScenarioKind, Scenarios
+from balancer.errors import InfeasibleError, NoAnswerInTime
+from balancer.panel import Arrangement, Installation
+
+_FIRST_ANSWER_WORK_S = 60.0
+
+_ORDER = {
+    Aim.NEUTRAL: (ObjectiveName.NEUTRAL, ObjectiveName.IMBALANCE, ObjectiveName.HEAVY_LEG),
+    Aim.LEGS: (ObjectiveName.HEAVY_LEG, ObjectiveName.NEUTRAL, ObjectiveName.IMBALANCE),
+}
+
+FIRST_OBJECTIVE = {aim: names[0] for aim, names in _ORDER.items()}
+"""The objective that comes first under each aim."""
+
+
+def plan_arrangement(
+    installation: Installation,
+    scenarios: Scenarios,
+    options: Options,
+    progress: ProgressListener | None = None,
+    on_interrupt: Callable[[], None] | None = None,
+) -> Plan:
+    """Find the arrangement with the lowest peaks, and prove how good it is.
+
+    Parameters
+    ----------
+    installation
+        Panel and circuits as found; circuits without a place are given one.
+    scenarios
+        What runs together; the peaks are over all of them.
+    options
+        Which objective comes first, what may be given up for fewer landings, and what may be touched.
+    progress
+        Told of every improvement.
+    on_interrupt
+        Called at the first Ctrl-C, which ends planning with the best so far.
+
+    Returns
+    -------
+    Plan
+        Re-checked without the solver.
+
+    Raises
+    ------
+    InfeasibleError
+        When no arrangement keeps every constraint; names those that conflict.
+    NoAnswerInTime
+        When the clock or Ctrl-C came before any arrangement was found.
+    SelfCheckError
+        When the re-check disagrees.
+    """
+    clock = Clock(options.time_limit_s, on_interrupt)
+    with clock.listening():
+        planner = Planner(installation, scenarios, options, clock, progress)
+        plan = planner.plan()
+    verify_plan(plan)
+    return plan
+
+
+@dataclass
+class Planner:
+    """Plans one installation under one set of options."""
+
+    installation: Installation
+    scenarios: Scenarios
+    options: Options
+    clock: Clock
+    listener: ProgressListener | None = None
+    start: Arrangement | None = None
+    """An arrangement to begin from, such as the best one with fewer landings."""
+
+    def __post_init__(self) -> None:
+        self._currents = PanelCurrents(self.installation, self.scenarios)
+        units = build_units(self.installation, self.options)
+        if any(not unit.placements and not unit.is_optional for unit in units):
+            raise explain_no_seats(self.installation, self.options, self.clock)
+        units = tuple(unit for unit in units if unit.placements)
+        self.problem = build_leg_problem(self.installation, self.scenarios, units)
+        self._seater = Seater(self.installation.panel, units, self.options.max_landings, self.clock)
+        self._counters = self._all_counters()
+        self._caps, self._notes = self._leg_limit()
+
+    def _all_counters(self) -> list[Counter]:
+        counters = list(self.problem.counters)
+        if self.options.max_landings is not None:
+            counters.append(replace(self.problem.landings, cap=self.options.max_landings))
+        return counters
+
+    def _leg_limit(self) -> tuple[list[Cap], list[str]]:
+        """Keep the legs below the main, except with everything on: no main is sized for that, so it is only said."""
+        main_a = self.installation.panel.main_a
+        if main_a is None:
+            return [], []
+        if self.scenarios.kind is not ScenarioKind.CONNECTED:
+            return [Cap(self.problem.heavy_leg, main_a)], []
+        note = (
+            f"with everything on at once a leg may carry more than the {main_a:g} A main; that is not held against it"
+        )
+        return [], [note]
+
+    def stages(self) -> Stages:
+        """Give the state to close objectives from: a first answer that keeps everything."""
+        tolerance = READINGS_TOLERANCE_A if self.scenarios.kind is ScenarioKind.READINGS else SCENARIO_TOLERANCE_A
+        return Stages(
+            problem=self.problem,
+            seater=self._seater,
+            clock=self.clock,
+            tolerance_a=tolerance,
+            answer=self._first_answer(),
+            caps=list(self._caps),
+            counters=list(self._counters),
+            listener=self.listener,
+        )
+
+    def _first_answer(self) -> Answer:
+        for answer in self._easy_answers():
+            if self._is_valid(answer):
+                return answer
+        heuristic = Heuristic(self.problem, self.problem.neutral, self._caps, self._counters)
+        for answer in heuristic.first_answers(self.clock):
+            if self._is_valid(answer):
+                return answer
+        return self._solved_answer()
+
+    def _easy_answers(self) -> list[Answer]:
+        reference = np.zeros(len(self.problem.choices), dtype=np.int8)
+        if self.start is None:
+            return [reference]
+        landed = {frozenset(self.start.items())}
+        signs = []
+        for unit in self.problem.units:
+            matching = [p.signs for p in unit.placements if all(item in next(iter(landed)) for item in p.landings)]
+            signs.append(matching[0] if matching else unit.placements[0].signs)
+        return [self.problem.answer_of(signs), reference]
+
+    def _is_valid(self, answer: Answer) -> bool:
+        return (
+            all(counter.value(answer) <= counter.cap for counter in self._counters)
+            and all(cap.rows.peak(answer) <= cap.limit_a for cap in self._caps)
+            and self._seater.least_effort(self.problem.signs(answer)) is not None
+        )
+
+    def _solved_answer(self) -> Answer:
+        """Ask the solver for any arrangement; explain why there is none."""
+        model = LegModel(self.problem, self._counters, self.clock)
+        model.seat(self.options.max_landings)
+        for cap in self._caps:
+            model.limit(cap.rows, cap.limit_a)
+        decision = model.decide(_FIRST_ANSWER_WORK_S)
+        if decision.answer is not None and self._is_valid(decision.answer):
+            return decision.answer
+        if decision.status is SolveStatus.INFEASIBLE:
+            raise self._reason()
+        message = "no arrangement was found before the limit, and none was ruled out"
+        raise NoAnswerInTime(message)
+
+    def _reason(self) -> InfeasibleError:
+        """Tell a leg limit from a lack of seats."""
+        model = LegModel(self.problem, self._counters, self.clock)
+        model.seat(self.options.max_landings)
+        if self._caps and model.decide(_FIRST_ANSWER_WORK_S).answer is not None:
+            main_a = self.installation.panel.main_a or 0.0
+            return InfeasibleError(
+                [f"in every arrangement some scenario puts more than the {main_a:g} A main on a leg"],
+                ["check the scenarios and the loads, or move load off this panel"],
+            )
+        return explain_no_seats(self.installation, self.options, self.clock)
+
+    def plan(self) -> Plan:
+        """Close every objective in turn and settle the seats."""
+        stages = self.stages()
+        objectives: list[ObjectiveResult] = []
+        neutral = self._free_neutral(stages) if self.options.aim is Aim.LEGS else None
+        for name in _ORDER[self.options.aim]:
+            if name is ObjectiveName.IMBALANCE and self.problem.does_imbalance_repeat_neutral:
+                continue
+            result = stages.close_peak(name)
+            objectives.append(result)
+            stages.hold(name, result.value + self.options.within_a)
+            if name is ObjectiveName.NEUTRAL and neutral is None:
+                neutral = result
+        assert neutral is not None, "the neutral is always among the objectives"
+        objectives += [stages.close_effort(), stages.close_mean()]
+        return self._plan(stages, objectives, neutral)
+
+    def _free_neutral(self, stages: Stages) -> ObjectiveResult:
+        """Lowest peak neutral with nothing else asked: what the report's bound speaks of when the legs come first."""
+        alone = replace(stages, caps=list(self._caps), counters=list(self._counters))
+        return alone.close_peak(ObjectiveName.NEUTRAL)
+
+    def _plan(self, stages: Stages, objectives: list[ObjectiveResult], neutral: ObjectiveResult) -> Plan:
+        seating = self.settled(stages)
+        as_left = seating.arrangement
+        as_found = self.installation.as_found
+        by_label = self.installation.by_label
+        return Plan(
+            installation=self.installation,
+            scenarios=self.scenarios,
+            options=self.options,
+            as_found=as_found,
+            as_left=as_left,
+            peaks_as_found=self._currents.peaks(as_found) if as_found else None,
+            peaks_as_left=self._currents.peaks(as_left),
+            objectives=tuple(objectives),
+            optimum_peak_neutral_a=neutral.value,
+            bound_peak_neutral_a=neutral.bound,
+            is_proven=neutral.is_proven,
+            landings_changed=seating.landings_changed,
+            effort=sum(landing_effort(by_label[label], landing) for label, landing in as_left.items()),
+            removed_spares=seating.removed,
+            stop=self.clock.stop,
+            notes=tuple(self._notes),
+        )
+
+    def settled(self, stages: Stages) -> Seating:
+        """Give the canonical seats of the best answer."""
+        seating = stages.seating(stages.answer)
+        assert seating is not None, "the best answer always has seats"
+        return self._seater.canonical(self.problem.signs(stages.answer), seating)

@@ -1,0 +1,206 @@
+"""Exact seat assignment: give every unit a seat on the legs that an answer chose, with the least effort."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Mapping, Sequence
+from dataclasses import dataclass
+from functools import cached_property
+
+from ortools.sat.python import cp_model
+
+from balancer.arrange.clock import Clock
+from balancer.arrange.seats import Part, Placement, Unit, removal_effort
+from balancer.arrange.solve import solve
+from balancer.panel import Arrangement, Panel
+
+_SEAT_WORK_S = 20.0
+_REACH_SCALE = 10
+_REACH_RANGE = 1_000_000
+
+
+@dataclass(frozen=True)
+class Seating:
+    """A placement for every unit, None for a spare that was taken out."""
+
+    units: tuple[Unit, ...]
+    placements: tuple[Placement | None, ...]
+
+    @property
+    def arrangement(self) -> Arrangement:
+        """Landing of every circuit that has a seat."""
+        return {label: landing for p in self.placements if p is not None for label, landing in p.landings}
+
+    @property
+    def effort(self) -> int:
+        """Effort in thousandths of a landing, with what moving and taking out spares costs."""
+        return sum(removal_effort() if p is None else p.effort for p in self.placements)
+
+    @property
+    def landings_changed(self) -> int:
+        """Hot conductors whose terminal differs from the one as found."""
+        return sum(p.landings_changed for p in self.placements if p is not None)
+
+    @property
+    def removed(self) -> tuple[str, ...]:
+        """Labels of landed spares that were taken out."""
+        return tuple(
+            circuit.label
+            for unit, placement in zip(self.units, self.placements, strict=True)
+            if placement is None
+            for circuit in unit.circuits
+            if circuit.is_landed
+        )
+
+
+class SeatModel:
+    """Seats as CP-SAT literals: each unit takes one of its placements, each half space holds one breaker."""
+
+    def __init__(self, model: cp_model.CpModel, stab_a: float | None, units: Sequence[Unit]) -> None:
+        self.model = model
+        self.units = tuple(units)
+        self.seats = [[model.new_bool_var(f"{u.name} at {p.landings}") for p in u.placements] for u in units]
+        self._add_one_seat_each()
+        self._add_one_breaker_a_part()
+        if stab_a is not None:
+            self._add_stab_limits(stab_a)
+
+    def _add_one_seat_each(self) -> None:
+        for unit, seats in zip(self.units, self.seats, strict=True):
+            if unit.is_optional:
+                self.model.add_at_most_one(seats)
+            else:
+                self.model.add_exactly_one(seats)
+
+    def _pairs(self) -> list[tuple[Unit, Placement, cp_model.IntVar]]:
+        return [
+            (unit, placement, seat)
+            for unit, seats in zip(self.units, self.seats, strict=True)
+            for placement, seat in zip(unit.placements, seats, strict=True)
+        ]
+
+    def _add_one_breaker_a_part(self) -> None:
+        users: dict[Part, list[cp_model.IntVar]] = {}
+        for _, placement, seat in self._pairs():
+            for part in placement.parts:
+                users.setdefault(part, []).append(seat)
+        # Both halves of a space mostly have the same users: one constraint serves both.
+        for seats in {tuple(v.index for v in seats): seats for seats in users.values()}.values():
+            self.model.add_at_most_one(seats)
+
+    def _add_stab_limits(self, stab_a: float) -> None:
+        """Sum of handle ratings in a row <= stab_a, or what breakers that cannot move put there already."""
+        rows: dict[int, list[tuple[float, cp_model.IntVar, bool]]] = {}
+        for unit, placement, seat in self._pairs():
+            for row, rating in placement.row_rating_a:
+                is_stuck = len(unit.placements) == 1 and not unit.is_optional
+                rows.setdefault(row, []).append((rating, seat, is_stuck))
+        for terms in rows.values():
+            stuck = sum(rating for rating, _, is_stuck in terms if is_stuck)
+            limit = max(stab_a, stuck)
+            ratings = [round(rating * 10) for rating, _, _ in terms]
+            self.model.add(cp_model.LinearExpr.weighted_sum([s for _, s, _ in terms], ratings) <= round(limit * 10))
+
+    @cached_property
+    def effort(self) -> cp_model.LinearExpr:
+        """Effort of the seating in thousandths of a landing."""
+        terms = self._pairs()
+        optional = sum(removal_effort() for unit in self.units if unit.is_optional)
+        costs = [p.effort - (removal_effort() if unit.is_optional else 0) for unit, p, _ in terms]
+        total = cp_model.LinearExpr.weighted_sum([seat for _, _, seat in terms], costs)
+        return cp_model.LinearExpr.affine(total, 1, optional)
+
+    @cached_property
+    def landings_changed(self) -> cp_model.LinearExpr:
+        """Landings changed by the seating."""
+        terms = self._pairs()
+        return cp_model.LinearExpr.weighted_sum([s for _, _, s in terms], [p.landings_changed for _, p, _ in terms])
+
+    @cached_property
+    def reach(self) -> cp_model.LinearExpr:
+        """Conductor length that the re-landings take up, in tenths of an inch."""
+        terms = self._pairs()
+        lengths = [round(p.reach_in * _REACH_SCALE) for _, p, _ in terms]
+        return cp_model.LinearExpr.weighted_sum([seat for _, _, seat in terms], lengths)
+
+    @property
+    def flat(self) -> list[cp_model.IntVar]:
+        """Every seat literal, unit by unit."""
+        return [seat for seats in self.seats for seat in seats]
+
+    def seating(self, values: Sequence[int]) -> Seating:
+        """Read a seating from the values of `flat`."""
+        placements: list[Placement | None] = []
+        start = 0
+        for unit in self.units:
+            chosen = values[start : start + len(unit.placements)]
+            start += len(unit.placements)
+            placements.append(unit.placements[chosen.index(1)] if 1 in chosen else None)
+        return Seating(self.units, tuple(placements))
+
+
+class Seater:
+    """Finds seats for answers, and remembers them."""
+
+    def __init__(self, panel: Panel, units: tuple[Unit, ...], max_landings: int | None, clock: Clock) -> None:
+        self._panel = panel
+        self._units = units
+        self.max_landings = max_landings
+        self._clock = clock
+        self._known: dict[tuple[tuple[int, ...], ...], Seating | None] = {}
+
+    def least_effort(self, signs: tuple[tuple[int, ...], ...]) -> Seating | None:
+        """Seating of least effort, then least reach, for a pattern of every unit; None where there is none."""
+        if signs not in self._known:
+            self._known[signs] = self._solve(signs, lambda seats: None)
+        return self._known[signs]
+
+    def canonical(self, signs: tuple[tuple[int, ...], ...], seating: Seating) -> Seating:
+        """Choose among the seatings of the same effort and reach: unit by unit the earliest of its placements."""
+        for index in range(len(self._units)):
+            settled = {self._units[i].name: seating.placements[i] for i in range(index)}
+            placement = seating.placements[index]
+            options = [p for p in self._units[index].placements if p.signs == signs[index]]
+            if placement is None or placement is options[0]:
+                continue
+            better = self._settle_one(signs, seating, settled, index)
+            seating = better if better is not None else seating
+        return seating
+
+    def _settle_one(
+        self,
+        signs: tuple[tuple[int, ...], ...],
+        seating: Seating,
+        settled: Mapping[str, Placement | None],
+        index: int,
+    ) -> Seating | None:
+        effort = seating.effort
+        reach = sum(round(p.reach_in * _REACH_SCALE) for p in seating.placements if p is not None)
+
+        def pin(seats: SeatModel) -> None:
+            seats.model.add(seats.effort <= effort)
+            seats.model.add(seats.reach <= reach)
+            for unit, literals in zip(seats.units, seats.seats, strict=True):
+                if unit.name in settled:
+                    wanted = settled[unit.name]
+                    for placement, literal in zip(unit.placements, literals, strict=True):
+                        seats.model.add(literal == int(wanted is not None and placement.landings == wanted.landings))
+            places = list(range(len(seats.seats[index])))
+            seats.model.minimize(cp_model.LinearExpr.weighted_sum(seats.seats[index], places))
+
+        return self._solve(signs, pin)
+
+    def _solve(self, signs: tuple[tuple[int, ...], ...], pin: Callable[[SeatModel], None]) -> Seating | None:
+        model = cp_model.CpModel()
+        narrowed = [
+            Unit(unit.circuits, tuple(p for p in unit.placements if p.signs == wanted), unit.is_optional)
+            for unit, wanted in zip(self._units, signs, strict=True)
+        ]
+        seats = SeatModel(model, self._panel.stab_a, narrowed)
+        if self.max_landings is not None:
+            model.add(seats.landings_changed <= self.max_landings)
+        model.minimize(seats.effort * _REACH_RANGE + seats.reach)
+        pin(seats)
+        solved = solve(model, seats.flat, self._clock, _SEAT_WORK_S)
+        if not solved.status.has_answer:
+            return None
+        return Seating(self._units, seats.seating(solved.values).placements)

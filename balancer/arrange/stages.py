@@ -1,0 +1,299 @@
+"""The objectives one after the other: each is closed as far as it can be, then held while the next is lowered."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Sequence
+from dataclasses import dataclass, field
+
+import numpy as np
+
+from balancer.arrange.clock import Clock
+from balancer.arrange.incumbent import Heuristic
+from balancer.arrange.leg_model import LegModel
+from balancer.arrange.legs import Answer, Counter, LegProblem, Rows, mirror_choice
+from balancer.arrange.results import ObjectiveName, ObjectiveResult, Progress, ProgressListener
+from balancer.arrange.search import STEP_A, Budget, Cap, Found, LegSearch
+from balancer.arrange.seating import Seater, Seating
+from balancer.arrange.seats import EFFORT_SCALE
+from balancer.arrange.solve import SolveStatus
+
+SCENARIO_TOLERANCE_A = 0.05
+READINGS_TOLERANCE_A = 0.01
+
+_SEARCH_WORK = 3e8
+"""Row evaluations before a search hands over to the solver: one to two seconds."""
+
+_SEAT_CHECK_WORK = 2e6
+"""What one exact seat assignment takes from a search's budget."""
+
+_DECISION_WORK_S = 60.0
+_EFFORT_WORK_S = 30.0
+_MOST_SURVIVORS = 20_000
+_FIRST_STEP = 4
+"""First step below the best answer, in tolerances; doubled on success, halved on proof that there is nothing."""
+
+_ROUNDING_A = 1e-9
+
+
+@dataclass
+class Stages:
+    """The state between objectives: the best answer, and what it must keep.
+
+    `answer` always has seats and keeps every cap and counter.
+    """
+
+    problem: LegProblem
+    seater: Seater
+    clock: Clock
+    tolerance_a: float
+    answer: Answer
+    caps: list[Cap] = field(default_factory=list)
+    counters: list[Counter] = field(default_factory=list)
+    listener: ProgressListener | None = None
+
+    def seating(self, answer: Answer) -> Seating | None:
+        """Seats of an answer, the least effort first; None where it has none."""
+        return self.seater.least_effort(self.problem.signs(answer))
+
+    @property
+    def effort(self) -> int:
+        """Effort of the best answer's seats, in thousandths of a landing."""
+        seating = self.seating(self.answer)
+        assert seating is not None, "the best answer always has seats"
+        return seating.effort
+
+    def close_peak(self, name: ObjectiveName) -> ObjectiveResult:
+        """Lower the peak of a quantity as far as possible and prove how far that is."""
+        rows = self.problem.rows(name)
+        if rows.is_constant:
+            value = rows.peak(self.answer)
+            return ObjectiveResult(name=name, value=value, bound=value, is_proven=True, proved_by="arithmetic")
+        task = _PeakTask(self, rows)
+        task.begin()
+        bound, proved_by = task.search()
+        if not proved_by and not self.clock.is_stopped:
+            bound, proved_by = task.decide()
+        self.answer = task.answer
+        is_proven = task.value - bound <= self.tolerance_a + _ROUNDING_A
+        return ObjectiveResult(
+            name=name, value=task.value, bound=bound, is_proven=is_proven, proved_by=proved_by if is_proven else ""
+        )
+
+    def hold(self, name: ObjectiveName, limit_a: float) -> None:
+        """Keep the peak of a quantity at or below a limit [A] from now on."""
+        self.caps.append(Cap(self.problem.rows(name), limit_a))
+
+    def report(self, name: ObjectiveName, best: float, bound: float) -> None:
+        """Tell the listener the news."""
+        if self.listener is not None:
+            self.listener(Progress(name, best, bound))
+
+    def close_effort(self) -> ObjectiveResult:
+        """Lower the effort of re-landing as far as possible."""
+        start = self.effort
+        self.report(ObjectiveName.EFFORT, start / EFFORT_SCALE, 0.0)
+        budget = self._budget()
+        search = LegSearch(
+            self.problem, self.caps, self.counters, budget, lambda answer: self._true_effort(answer, budget)
+        )
+        found = search.minimise_count(self.problem.effort, self.answer, start)
+        self._take(found)
+        value, bound, proved_by = self.effort, self.effort if found.is_complete else 0, "search"
+        if not found.is_complete and not self.clock.is_stopped:
+            bound, proved_by = self._solve_effort(), "solver"
+            value = self.effort
+        is_proven = bound >= value
+        self.counters.append(_capped(self.problem.effort, value))
+        return ObjectiveResult(
+            name=ObjectiveName.EFFORT,
+            value=value / EFFORT_SCALE,
+            bound=min(value, bound) / EFFORT_SCALE,
+            is_proven=is_proven,
+            proved_by=proved_by if is_proven else "",
+        )
+
+    def _budget(self) -> Budget:
+        return Budget(_SEARCH_WORK, lambda: self.clock.is_stopped)
+
+    def _take(self, found: Found) -> None:
+        if found.answer is not None:
+            self.answer = found.answer
+
+    def _true_effort(self, answer: Answer, budget: Budget) -> float | None:
+        budget.work -= _SEAT_CHECK_WORK
+        seating = self.seating(answer)
+        return None if seating is None else float(seating.effort)
+
+    def _solve_effort(self) -> int:
+        """Least effort by the solver, seats and legs in one model; gives the proven bound."""
+        model = self.new_model()
+        model.seat(self.seater.max_landings)
+        model.cap_effort(self.effort)
+        decision = model.minimise_effort(_EFFORT_WORK_S, self.answer)
+        if decision.answer is not None and self.keeps_everything(decision.answer):
+            seating = self.seating(decision.answer)
+            if seating is not None and seating.effort <= self.effort:
+                self.answer = decision.answer
+        if decision.status is SolveStatus.INFEASIBLE:
+            return self.effort
+        return math.ceil(decision.bound - 1e-6) if math.isfinite(decision.bound) else 0
+
+    def new_model(self) -> LegModel:
+        """Give a solver model under everything that is held."""
+        model = LegModel(self.problem, self.counters, self.clock)
+        for cap in self.caps:
+            if not cap.rows.is_constant:
+                model.limit(cap.rows, cap.limit_a)
+        return model
+
+    def keeps_everything(self, answer: Answer) -> bool:
+        """Whether an answer keeps every cap and counter, recomputed."""
+        return all(counter.value(answer) <= counter.cap for counter in self.counters) and all(
+            cap.rows.peak(answer) <= cap.limit_a + _ROUNDING_A for cap in self.caps
+        )
+
+    def close_mean(self) -> ObjectiveResult:
+        """Lowest mean neutral among what is left, then the canonical order among equals."""
+        effort = self.effort
+        search = LegSearch(self.problem, self.caps, self.counters, self._budget(), lambda answer: 0.0)
+        survivors = search.survivors(_MOST_SURVIVORS)
+        value = self.problem.mean_neutral(self.answer)
+        if survivors is None:
+            bound = _least_mean(self.problem)
+            return ObjectiveResult(
+                name=ObjectiveName.MEAN_NEUTRAL, value=value, bound=min(bound, value), is_proven=False, proved_by=""
+            )
+        ranked = sorted(survivors, key=lambda a: (round(self.problem.mean_neutral(a), 7), tuple(a.tolist())))
+        for answer in ranked:
+            seating = self.seating(answer)
+            if seating is not None and seating.effort <= effort:
+                self.answer = answer
+                break
+        value = self.problem.mean_neutral(self.answer)
+        return ObjectiveResult(
+            name=ObjectiveName.MEAN_NEUTRAL,
+            value=value,
+            bound=value,
+            is_proven=not self.clock.is_stopped,
+            proved_by="search",
+        )
+
+
+def _capped(counter: Counter, cap: int) -> Counter:
+    return Counter(counter.base, counter.costs, cap, counter.name)
+
+
+def _least_mean(problem: LegProblem) -> float:
+    """Mean over the rows of what no answer can take away: a weak bound, but an honest one."""
+    rows = problem.neutral
+    low = np.zeros(len(rows.offset), dtype=complex)
+    half = np.zeros(len(rows.offset))
+    for group in problem.groups:
+        effects = np.concatenate([np.zeros((len(rows.offset), 1)), rows.effects[:, list(group)]], axis=1)
+        middle = effects.mean(axis=1)
+        low += middle
+        half += np.abs(effects - middle[:, None]).max(axis=1)
+    least = np.maximum(np.abs(rows.offset + low) - half, 0.0).reshape(len(problem.cases), -1)
+    return float(least.max(axis=0).mean())
+
+
+@dataclass
+class _PeakTask:
+    """Closing one peak: first answers, then the search, then decisions by the solver."""
+
+    stages: Stages
+    rows: Rows
+    answer: Answer = field(init=False)
+    value: float = field(init=False)
+
+    def __post_init__(self) -> None:
+        self.answer = self.stages.answer
+        self.value = self.rows.peak(self.answer)
+
+    def begin(self) -> None:
+        """Improve on the present answer by annealing and descent."""
+        stages = self.stages
+        heuristic = self._heuristic()
+        for answer in heuristic.first_answers(stages.clock):
+            value = self.rows.peak(answer)
+            if value > self.value - STEP_A:
+                break
+            if self._seated(answer):
+                self.answer, self.value = answer, value
+                break
+        stages.report(self.rows.name, self.value, 0.0)
+
+    def _heuristic(self) -> Heuristic:
+        return Heuristic(self.stages.problem, self.rows, self.stages.caps, self.stages.counters)
+
+    def _seated(self, answer: Answer) -> bool:
+        return self.stages.seating(answer) is not None
+
+    def search(self) -> tuple[float, str]:
+        """Search exactly within a budget; gives the bound and what proved it."""
+        budget = Budget(_SEARCH_WORK, lambda: self.stages.clock.is_stopped)
+
+        def accept(answer: Answer) -> float | None:
+            budget.work -= _SEAT_CHECK_WORK
+            return self.rows.peak(answer) if self._seated(answer) else None
+
+        search = LegSearch(self.stages.problem, self.stages.caps, self.stages.counters, budget, accept)
+        found = search.minimise_peak(self.rows, self.answer, self.value)
+        if found.answer is not None:
+            self.answer, self.value = found.answer, found.value
+        self.stages.report(self.rows.name, self.value, 0.0)
+        return (max(0.0, self.value - STEP_A), "search") if found.is_complete else (0.0, "")
+
+    def decide(self) -> tuple[float, str]:
+        """Ask the solver whether anything is below a level, and close in from both sides."""
+        tolerance = self.stages.tolerance_a
+        bound, step, with_seats = 0.0, _FIRST_STEP * tolerance, False
+        while self.value - bound > tolerance + _ROUNDING_A and not self.stages.clock.is_stopped:
+            step = max(tolerance, min(step, (self.value - bound) / 2.0))
+            level = self.value - step
+            decision = self._below(level, with_seats)
+            if decision is None:
+                if step <= tolerance + _ROUNDING_A:
+                    break
+                step = tolerance
+            elif len(decision) == 0:
+                bound, step = max(bound, level), step / 2.0
+            elif self._improve(decision):
+                step *= 2.0
+            elif with_seats:
+                break
+            else:
+                with_seats = True
+            self.stages.report(self.rows.name, self.value, bound)
+        return bound, "solver"
+
+    def _below(self, level: float, with_seats: bool) -> list[Answer] | None:
+        """Answers at or below a level: none is proof that there are none; None says that the solver gave up."""
+        stages = self.stages
+        model = stages.new_model()
+        model.limit(self.rows, level)
+        pinned = None
+        if with_seats:
+            model.seat(stages.seater.max_landings)
+        else:
+            held = [cap.rows for cap in stages.caps if not cap.rows.is_constant]
+            pinned = mirror_choice(stages.problem, [self.rows, *held], stages.counters)
+        if pinned is not None:
+            model.pin_mirror(pinned)
+        decision = model.decide(_DECISION_WORK_S)
+        if decision.status is SolveStatus.INFEASIBLE:
+            return []
+        if decision.answer is None:
+            return None
+        return [decision.answer] if pinned is None else [decision.answer, 1 - decision.answer]
+
+    def _improve(self, answers: Sequence[Answer]) -> bool:
+        """Take the best seatable of some answers and what descends from them."""
+        heuristic = self._heuristic()
+        for candidate in [*(heuristic.improved(answer) for answer in answers), *answers]:
+            value = self.rows.peak(candidate)
+            if value < self.value - STEP_A and self.stages.keeps_everything(candidate) and self._seated(candidate):
+                self.answer, self.value = candidate, value
+                return True
+        return False
