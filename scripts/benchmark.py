@@ -114,7 +114,7 @@ def build_large_panel(seed: int) -> tuple[Installation, Scenarios]:
 def solve_large_panel(seed: int) -> tuple[float, float, float]:
     """Wall time [s], lowest peak neutral [A] and its proven bound [A] of one seeded panel, imports included."""
     began = time.perf_counter()
-    from balancer.arrange import plan_arrangement
+    from balancer.arrange.plan import plan_arrangement
     from balancer.arrange.results import Options
 
     first = plan_arrangement(*build_large_panel(seed), Options()).objectives[0]

@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 
 import balancer
-from balancer.arrange import plan_arrangement
+from balancer.arrange.plan import plan_arrangement
 from balancer.arrange.results import Aim, Options
 from balancer.electrical.phasors import PanelCurrents
 from balancer.electrical.scenario_sets import choose_scenarios

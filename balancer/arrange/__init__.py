@@ -1,7 +1,5 @@
-"""The arrangement: which circuit goes where, how good that is, and what to do at the panel."""
+"""The arrangement: which circuit goes where, how good that is, and what to do at the panel.
 
-from balancer.arrange.plan import plan_arrangement
-from balancer.arrange.results import Aim, Options, Plan, Tradeoff
-from balancer.arrange.tradeoff import trade_landings
-
-__all__ = ["Aim", "Options", "Plan", "Tradeoff", "plan_arrangement", "trade_landings"]
+Nothing is imported here: the planner brings in a solver that takes most of a second to load, and the steps, the clamp
+check and the explanations do without it.
+"""

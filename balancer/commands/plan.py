@@ -63,7 +63,8 @@ def plan(files: InputFiles, wishes: Wishes, max_landings: int | None, saving: Sa
 
 
 def _answer(installation: Installation, scenarios: Scenarios, options: Options, progress: ProgressLine) -> PlanAnswer:
-    from balancer.arrange import plan_arrangement, trade_landings
+    from balancer.arrange.plan import plan_arrangement
+    from balancer.arrange.tradeoff import trade_landings
     from balancer.reports.answers import plan_answer
 
     found = plan_arrangement(installation, scenarios, options, progress)

@@ -79,8 +79,8 @@ class StandInPlanner:
 
 
 def stand_in(monkeypatch: pytest.MonkeyPatch, planner: StandInPlanner) -> StandInPlanner:
-    monkeypatch.setattr("balancer.arrange.plan_arrangement", planner.plan, raising=False)
-    monkeypatch.setattr("balancer.arrange.trade_landings", planner.trade, raising=False)
+    monkeypatch.setattr("balancer.arrange.plan.plan_arrangement", planner.plan)
+    monkeypatch.setattr("balancer.arrange.tradeoff.trade_landings", planner.trade)
     return planner
 
 
@@ -216,7 +216,7 @@ def test_a_finished_plan_is_shown_when_what_follows_is_interrupted(
 ) -> None:
     planner = stand_in(monkeypatch, StandInPlanner(moves=MOVES))
     monkeypatch.setattr(
-        "balancer.arrange.trade_landings", lambda *_: Tradeoff(points=(), flat_from=None, stop=Stop.INTERRUPTED)
+        "balancer.arrange.tradeoff.trade_landings", lambda *_: Tradeoff(points=(), flat_from=None, stop=Stop.INTERRUPTED)
     )
     result = run("plan", house)
     assert len(planner.asked) == 1
