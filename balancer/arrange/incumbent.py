@@ -23,6 +23,9 @@ _COLD = 0.01
 _WARM = 0.03
 """Temperatures as shares of a typical current in a row."""
 
+_FEW_CHOICES = 14
+"""Up to so many choices the exact search looks at every answer in less time than annealing takes."""
+
 _PAIR_SHARE = 0.6
 _COUNT_PENALTY = 50.0
 """Weight of one unit of a broken counter against a typical current in a row."""
@@ -92,7 +95,7 @@ class Heuristic:
 
     def _annealed(self, clock: Clock) -> list[Answer]:
         size = len(self.problem.choices)
-        if size == 0:
+        if size <= _FEW_CHOICES:
             return []
         chains = _Chains(self, np.random.default_rng(_SEED))
         for step in range(_STEPS):
