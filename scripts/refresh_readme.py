@@ -20,8 +20,16 @@ from balancer.electrical.defaults import known_uses
 from balancer.files.columns import COLUMNS
 
 README = ROOT / "README.md"
-SCREEN_ENDS_BEFORE = "Steps"
-"""Heading of the report at which the README's screen stops."""
+SHOWN_SECTIONS = (
+    "",
+    "AS FOUND AND AS LEFT",
+    "WHAT MAKES THE PEAK",
+    "HOW GOOD IT IS",
+    "WHAT FEWER LANDINGS WOULD GIVE",
+    "THE PANEL AS LEFT",
+    "CLAMP CHECK",
+)
+"""Sections of the demo's report that the README shows, by heading; "" is what stands before the first one."""
 
 
 def command_table() -> str:
@@ -59,7 +67,7 @@ def use_list() -> str:
 
 
 def screen() -> str:
-    """Show the beginning of the demo's report as a terminal of 80 columns prints it."""
+    """Show some sections of the demo's report as a terminal of 80 columns prints them."""
     environment = {name: value for name, value in os.environ.items() if name not in ("COLUMNS", "FORCE_COLOR")}
     command = [sys.executable, "-m", "balancer", "plan", *HOUSE]
     done = subprocess.run(
@@ -70,8 +78,19 @@ def screen() -> str:
         encoding="utf-8",
         check=True,
     )
-    shown = done.stdout.splitlines()
-    return "\n".join(["```text", *shown[: shown.index(SCREEN_ENDS_BEFORE)], "...", "```"])
+    sections = sections_of(done.stdout)
+    shown = "\n\n".join(sections[heading] for heading in SHOWN_SECTIONS)
+    return f"```text\n{shown}\n```"
+
+
+def sections_of(report: str) -> dict[str, str]:
+    """Part a report at its headings, lines in capitals; blanks at the ends of lines are dropped."""
+    sections: dict[str, list[str]] = {"": []}
+    for line in map(str.rstrip, report.splitlines()):
+        if line.isupper():
+            sections[line] = []
+        sections[next(reversed(sections))].append(line)
+    return {heading: "\n".join(lines).strip("\n") for heading, lines in sections.items()}
 
 
 BLOCKS: dict[str, Callable[[], str]] = {

@@ -189,6 +189,6 @@ def test_help_loads_no_heavy_library() -> None:
 
 
 def test_planning_loads_no_screen() -> None:
-    loaded = modules_loaded_by("import balancer.arrange, balancer.rules, balancer.files")
-    assert "balancer.arrange" in loaded
+    loaded = modules_loaded_by("import balancer.arrange.plan, balancer.rules, balancer.files")
+    assert "balancer.arrange.plan" in loaded
     assert loaded & {"rich", "click"} == set()
