@@ -87,7 +87,7 @@ def sections_of(report: str) -> dict[str, str]:
     """Part a report at its headings, lines in capitals; blanks at the ends of lines are dropped."""
     sections: dict[str, list[str]] = {"": []}
     for line in map(str.rstrip, report.splitlines()):
-        if line.isupper():
+        if re.fullmatch(r"[A-Z][A-Z ]+", line):
             sections[line] = []
         sections[next(reversed(sections))].append(line)
     return {heading: "\n".join(lines).strip("\n") for heading, lines in sections.items()}
