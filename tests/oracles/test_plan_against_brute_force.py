@@ -1,0 +1,91 @@
+"""Plans against every arrangement of small panels, listed outright, and against every pattern of legs of larger ones."""
+
+import numpy as np
+import pytest
+from oracles.brute_force import Cost, Enumeration, Figures, enumerate_arrangements, figures, keeps_main, pattern
+from oracles.made_up_panels import small_installation, some_options, some_scenarios
+
+from balancer.arrange.plan import plan_arrangement
+from balancer.arrange.results import ObjectiveName, Options, Plan
+from balancer.electrical.scenarios import Scenarios
+from balancer.errors import InfeasibleError
+from balancer.panel import Installation
+
+SEEDS = range(1500)
+MILLIAMP = 1e-3
+
+
+class Answers:
+    """What is left of the listed patterns of legs, objective after objective."""
+
+    def __init__(self, listed: Enumeration, scenarios: Scenarios) -> None:
+        installation = listed.installation
+        self.signs = np.array(list(listed.cheapest), dtype=np.int8).reshape(-1, len(installation.circuits))
+        self.costs = list(listed.cheapest.values())
+        self.figures = figures(installation, scenarios, self.signs) if len(self.signs) else None
+        self.left = np.zeros(0, dtype=bool)
+        if self.figures is not None:
+            self.left = keeps_main(installation, scenarios, self.figures)
+
+    def best(self, name: ObjectiveName) -> float:
+        assert self.figures is not None
+        return float(self.figures.of(name)[self.left].min())
+
+    def hold(self, name: ObjectiveName, value: float) -> None:
+        assert self.figures is not None
+        self.left &= self.figures.of(name) <= value + 1e-6
+
+    @property
+    def least(self) -> Cost:
+        return min((cost for cost, keep in zip(self.costs, self.left, strict=True) if keep), key=self._key)
+
+    def hold_cost(self, most: Cost) -> None:
+        self.left &= np.array([self._key(cost) <= self._key(most) for cost in self.costs])
+
+    @staticmethod
+    def _key(cost: Cost) -> tuple[int, float]:
+        return cost.removed, cost.effort
+
+
+def outcome(installation: Installation, scenarios: Scenarios, options: Options) -> Plan | None:
+    """Give the plan, or None where the planner says that none exists; any other error fails the test."""
+    try:
+        return plan_arrangement(installation, scenarios, options)
+    except InfeasibleError:
+        return None
+
+
+def assert_objectives_agree(plan: Plan, answers: Answers) -> None:
+    for result in plan.objectives:
+        assert result.is_proven, result.name
+        if result.name is ObjectiveName.EFFORT:
+            assert (len(plan.removed_spares), plan.effort) == pytest.approx(Answers._key(answers.least), abs=1e-6)
+            answers.hold_cost(answers.least)
+            continue
+        best = answers.best(result.name)
+        assert result.value == pytest.approx(best, abs=MILLIAMP), result.name
+        assert result.bound <= best + 1e-6, result.name
+        answers.hold(result.name, result.value)
+
+
+def evaluated(plan: Plan) -> Figures:
+    signs = np.array([pattern(plan.installation, plan.as_left)], dtype=np.int8)
+    return figures(plan.installation, plan.scenarios, signs)
+
+
+@pytest.mark.parametrize("seed", SEEDS)
+def test_plan_is_the_best_of_all_arrangements(seed: int) -> None:
+    installation, options = small_installation(seed), some_options(seed)
+    scenarios = some_scenarios(seed, installation)
+    listed = enumerate_arrangements(installation, options)
+    answers = Answers(listed, scenarios)
+    plan = outcome(installation, scenarios, options)
+    assert (plan is not None) == bool(answers.left.any())
+    if plan is None:
+        return
+    assert plan.is_proven
+    assert listed.allows(plan.as_left)
+    assert_objectives_agree(plan, answers)
+    neutral = evaluated(plan).neutral[0]
+    assert plan.peaks_as_left.neutral.value_a == pytest.approx(neutral, abs=1e-6)
+    assert plan.bound_peak_neutral_a <= neutral + 1e-6
