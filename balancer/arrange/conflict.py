@@ -9,7 +9,7 @@ from ortools.sat.python import cp_model
 
 from balancer.arrange.clock import Clock
 from balancer.arrange.results import Options
-from balancer.arrange.seating import SeatModel
+from balancer.arrange.seating import SeatModel, row_limits_a
 from balancer.arrange.seats import Hold, build_units
 from balancer.arrange.solve import SolveStatus, solve
 from balancer.errors import InfeasibleError, NoAnswerInTime
@@ -129,7 +129,7 @@ def _fits(installation: Installation, options: Options, kept: Sequence[_Constrai
         return False
     model = cp_model.CpModel()
     stab_a = installation.panel.stab_a if (Hold.STAB, "") in holding else None
-    seats = SeatModel(model, stab_a, units)
+    seats = SeatModel(model, units, row_limits_a(stab_a, units))
     if options.max_landings is not None and (None, "") in holding:
         model.add(seats.landings_changed <= options.max_landings)
     status = solve(model, (), clock, _CHECK_WORK_S).status

@@ -10,7 +10,7 @@ from ortools.sat.python import cp_model
 
 from balancer.arrange.clock import Clock
 from balancer.arrange.legs import Answer, Counter, LegProblem, Rows
-from balancer.arrange.seating import SeatModel
+from balancer.arrange.seating import SeatModel, row_limits_a
 from balancer.arrange.solve import SolveStatus, solve
 
 _CUTS_A_ROUND = 12
@@ -85,7 +85,8 @@ class LegModel:
 
     def seat(self, max_landings: int | None) -> None:
         """Join the exact seats to the legs, so that every answer has some."""
-        self._seats = SeatModel(self._model, self._problem.installation.panel.stab_a, self._problem.units)
+        limits_a = row_limits_a(self._problem.installation.panel.stab_a, self._problem.units)
+        self._seats = SeatModel(self._model, self._problem.units, limits_a)
         taken = {(c.unit, c.signs): v for c, v in zip(self._problem.choices, self._taken, strict=True)}
         for index, (unit, seats) in enumerate(zip(self._problem.units, self._seats.seats, strict=True)):
             for placement, literal in zip(unit.placements, seats, strict=True):

@@ -15,6 +15,7 @@ from balancer.panel import Arrangement, Panel
 
 _SEAT_WORK_S = 20.0
 _REACH_SCALE = 10
+_RATING_SCALE = 10
 _REACH_RANGE = 1_000_000
 
 
@@ -52,17 +53,32 @@ class Seating:
         )
 
 
+def row_limits_a(stab_a: float | None, units: Sequence[Unit]) -> dict[int, float]:
+    """Limit of the handle ratings [A] in every row: `stab_a`, or what no placement keeps out of there; none without.
+
+    All placements of the units count, whichever legs are chosen later.
+    """
+    if stab_a is None:
+        return {}
+    limits: dict[int, float] = {}
+    for unit in units:
+        ratings = [dict(placement.row_rating_a) for placement in unit.placements]
+        for row in sorted({row for rating in ratings for row in rating}):
+            stuck = 0.0 if unit.is_optional else min(rating.get(row, 0.0) for rating in ratings)
+            limits[row] = limits.get(row, 0.0) + stuck
+    return {row: max(stab_a, stuck) for row, stuck in limits.items()}
+
+
 class SeatModel:
     """Seats as CP-SAT literals: each unit takes one of its placements, each half space holds one breaker."""
 
-    def __init__(self, model: cp_model.CpModel, stab_a: float | None, units: Sequence[Unit]) -> None:
+    def __init__(self, model: cp_model.CpModel, units: Sequence[Unit], row_limits_a: Mapping[int, float]) -> None:
         self.model = model
         self.units = tuple(units)
         self.seats = [[model.new_bool_var(f"{u.name} at {p.landings}") for p in u.placements] for u in units]
         self._add_one_seat_each()
         self._add_one_breaker_a_part()
-        if stab_a is not None:
-            self._add_stab_limits(stab_a)
+        self._add_stab_limits(row_limits_a)
 
     def _add_one_seat_each(self) -> None:
         for unit, seats in zip(self.units, self.seats, strict=True):
@@ -87,18 +103,15 @@ class SeatModel:
         for seats in {tuple(v.index for v in seats): seats for seats in users.values()}.values():
             self.model.add_at_most_one(seats)
 
-    def _add_stab_limits(self, stab_a: float) -> None:
-        """Sum of handle ratings in a row <= stab_a, or what breakers that cannot move put there already."""
-        rows: dict[int, list[tuple[float, cp_model.IntVar, bool]]] = {}
-        for unit, placement, seat in self._pairs():
+    def _add_stab_limits(self, row_limits_a: Mapping[int, float]) -> None:
+        rows: dict[int, list[tuple[int, cp_model.IntVar]]] = {}
+        for _, placement, seat in self._pairs():
             for row, rating in placement.row_rating_a:
-                is_stuck = len(unit.placements) == 1 and not unit.is_optional
-                rows.setdefault(row, []).append((rating, seat, is_stuck))
-        for terms in rows.values():
-            stuck = sum(rating for rating, _, is_stuck in terms if is_stuck)
-            limit = max(stab_a, stuck)
-            ratings = [round(rating * 10) for rating, _, _ in terms]
-            self.model.add(cp_model.LinearExpr.weighted_sum([s for _, s, _ in terms], ratings) <= round(limit * 10))
+                rows.setdefault(row, []).append((round(rating * _RATING_SCALE), seat))
+        for row, terms in rows.items():
+            if row in row_limits_a:
+                total = cp_model.LinearExpr.weighted_sum([seat for _, seat in terms], [rating for rating, _ in terms])
+                self.model.add(total <= round(row_limits_a[row] * _RATING_SCALE))
 
     @cached_property
     def effort(self) -> cp_model.LinearExpr:
@@ -142,8 +155,8 @@ class Seater:
     """Finds seats for answers, and remembers them."""
 
     def __init__(self, panel: Panel, units: tuple[Unit, ...], max_landings: int | None, clock: Clock) -> None:
-        self._panel = panel
         self._units = units
+        self._row_limits_a = row_limits_a(panel.stab_a, units)
         self.max_landings = max_landings
         self._clock = clock
         self._known: dict[tuple[tuple[int, ...], ...], Seating | None] = {}
@@ -195,7 +208,7 @@ class Seater:
             Unit(unit.circuits, tuple(p for p in unit.placements if p.signs == wanted), unit.is_optional)
             for unit, wanted in zip(self._units, signs, strict=True)
         ]
-        seats = SeatModel(model, self._panel.stab_a, narrowed)
+        seats = SeatModel(model, narrowed, self._row_limits_a)
         if self.max_landings is not None:
             model.add(seats.landings_changed <= self.max_landings)
         model.minimize(seats.effort * _REACH_RANGE + seats.reach)

@@ -57,7 +57,7 @@ def enumerate_arrangements(installation: Installation, options: Options) -> Enum
     placings = [_placings(installation, options, unit) for unit in _units(installation)]
     result = Enumeration(installation, placings=placings)
     costs = [[_cost(installation, unit, placing) for placing in unit] for unit in placings]
-    stuck = _row_ratings(installation, {k: v for unit in placings if len(unit) == 1 for k, v in unit[0].items()})
+    stuck = _unavoidable_ratings(installation, placings)
     order = sorted(range(len(placings)), key=lambda index: len(placings[index]))
     most = math.inf if options.max_landings is None else options.max_landings
 
@@ -269,10 +269,20 @@ def _reaches(panel: Panel, circuit: Circuit, landing: Landing) -> bool:
 
 
 def _keeps_stabs(installation: Installation, arrangement: Placing, stuck: dict[int, float]) -> bool:
-    """Handle ratings of a row within its limit; a row that breakers without a choice overload gets no more."""
+    """Handle ratings of a row within its limit; a row that breakers overload wherever they go gets no more."""
     limit = installation.panel.stab_a
     ratings = _row_ratings(installation, arrangement)
     return limit is None or all(rating <= max(limit, stuck.get(row, 0.0)) for row, rating in ratings.items())
+
+
+def _unavoidable_ratings(installation: Installation, placings: list[list[Placing]]) -> dict[int, float]:
+    """What the units put in each row wherever they go."""
+    stuck: dict[int, float] = {}
+    for unit in placings:
+        ratings = [_row_ratings(installation, placing) for placing in unit]
+        for row in {space.row for space in installation.panel.spaces}:
+            stuck[row] = stuck.get(row, 0.0) + min((rating.get(row, 0.0) for rating in ratings), default=0.0)
+    return stuck
 
 
 def _row_ratings(installation: Installation, arrangement: Placing) -> dict[int, float]:
