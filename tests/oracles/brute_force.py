@@ -19,6 +19,8 @@ from balancer.arrange.results import ObjectiveName, Options
 from balancer.electrical.scenarios import ScenarioKind, Scenarios
 from balancer.panel import Circuit, Installation, Landing, Leg, Panel, Pole, Role, SupplySystem, Terminal, Volts
 
+_BLOCK = 1 << 13
+
 Placing = dict[str, Landing]
 Signs = tuple[int, ...]
 """For every circuit: +1 with its 120 V part on leg A, -1 on leg B, 0 where it has none, is not landed, or is unknown."""
@@ -82,7 +84,9 @@ def enumerate_arrangements(installation: Installation, options: Options) -> Enum
 
 def pattern(installation: Installation, arrangement: Placing) -> Signs:
     """Give the leg of every circuit's 120 V part."""
-    return tuple(_sign(installation.panel, circuit, arrangement.get(circuit.label)) for circuit in installation.circuits)
+    return tuple(
+        _sign(installation.panel, circuit, arrangement.get(circuit.label)) for circuit in installation.circuits
+    )
 
 
 def _sign(panel: Panel, circuit: Circuit, landing: Landing | None) -> int:
@@ -329,7 +333,17 @@ class Figures:
 
 
 def figures(installation: Installation, scenarios: Scenarios, signs: NDArray[np.int8]) -> Figures:
-    """Add up complex currents, every angle against leg A's voltage, for patterns of shape (patterns, circuits).
+    """Work out the objectives of patterns of shape (patterns, circuits), some at a time to stay within the cache."""
+    blocks = [signs[start : start + _BLOCK] for start in range(0, len(signs), _BLOCK)]
+    unknown = [i for i, c in enumerate(installation.circuits) if c.load.neutral_a and not signs[:, i].any()]
+    parts = [_figures(installation, scenarios, block, unknown) for block in blocks]
+    return Figures(*(np.concatenate(values) for values in zip(*parts, strict=True)))
+
+
+def _figures(
+    installation: Installation, scenarios: Scenarios, signs: NDArray[np.int8], unknown: list[int]
+) -> tuple[NDArray[np.float64], ...]:
+    """Add up complex currents, every angle against leg A's voltage, for every pattern.
 
     Notes
     -----
@@ -342,7 +356,6 @@ def figures(installation: Installation, scenarios: Scenarios, signs: NDArray[np.
     turns = np.array([_turn(load.neutral_pf.value, load.neutral_pf.is_leading) for load in loads])
     line_turns = np.array([_turn(load.line_pf.value, load.line_pf.is_leading) for load in loads])
     neutral, line = scenarios.neutral_a * turns, (scenarios.line_a * line_turns).sum(axis=1)
-    unknown = [i for i, load in enumerate(loads) if load.neutral_a and not signs[:, i].any()]
     worst: list[NDArray[np.float64]] = []
     for volt_b in _leg_b_voltages(installation):
         along = (1 - volt_b) / abs(1 - volt_b) if volt_b != 1 else 0
@@ -359,7 +372,7 @@ def figures(installation: Installation, scenarios: Scenarios, signs: NDArray[np.
             worst.append(values)
     over_cases = np.max(np.array(worst), axis=0)
     peaks = over_cases.max(axis=2)
-    return Figures(peaks[0], peaks[1], peaks[2], over_cases[0].mean(axis=1))
+    return (*peaks, over_cases[0].mean(axis=1))
 
 
 def _turn(power_factor: float, is_leading: bool) -> complex:

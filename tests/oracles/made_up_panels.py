@@ -176,3 +176,24 @@ def some_options(seed: int) -> Options:
         turn_240=bool(rng.random() < 0.4),
         splice=bool(rng.random() < 0.3),
     )
+
+
+def plain_installation(seed: int, free: int, vacant: int = 1) -> Installation:
+    """Give a panel of `free` single-pole breakers, a range, a water heater, a pair, two fixed ones and a vacancy."""
+    rng = np.random.default_rng(seed)
+    fixed_spaces = 8
+    spaces = free + fixed_spaces + vacant
+    supply = SUPPLIES[seed % len(SUPPLIES)]
+    wall = Wall(rng, Panel(spaces=ordinary_spaces(spaces + spaces % 2), supply=supply))
+    wall.two_pole("range", 1, 3)
+    wall.two_pole("two-pole", 2, 4)
+    for space in (5, 7):
+        wall.add(space, shared_neutral="n1")
+    for space in (6, 8):
+        wall.add(space, is_fixed=True)
+    numbers = rng.permutation(range(9, len(wall.panel.spaces) + 1)).tolist()
+    for index in range(free):
+        # One in eight is new, one in eight idle, the others lopsided: heavy ones tend to be on leg A.
+        load = Load() if index % 8 == 5 else load_120(rng)
+        wall.add(*([] if index % 8 == 7 else [numbers[index]]), load=load)
+    return Installation(panel=wall.panel, circuits=tuple(wall.circuits))

@@ -3,15 +3,16 @@
 import numpy as np
 import pytest
 from oracles.brute_force import Cost, Enumeration, Figures, enumerate_arrangements, figures, keeps_main, pattern
-from oracles.made_up_panels import small_installation, some_options, some_scenarios
+from oracles.leg_counts import every_pattern
+from oracles.made_up_panels import plain_installation, small_installation, some_options, some_scenarios
 
 from balancer.arrange.plan import plan_arrangement
-from balancer.arrange.results import ObjectiveName, Options, Plan
+from balancer.arrange.results import Aim, ObjectiveName, Options, Plan
 from balancer.electrical.scenarios import Scenarios
 from balancer.errors import InfeasibleError
 from balancer.panel import Installation
 
-SEEDS = range(1500)
+SEEDS = range(120)
 MILLIAMP = 1e-3
 
 
@@ -89,3 +90,41 @@ def test_plan_is_the_best_of_all_arrangements(seed: int) -> None:
     neutral = evaluated(plan).neutral[0]
     assert plan.peaks_as_left.neutral.value_a == pytest.approx(neutral, abs=1e-6)
     assert plan.bound_peak_neutral_a <= neutral + 1e-6
+
+
+@pytest.mark.parametrize(
+    ("seed", "free", "options"),
+    [
+        (0, 18, Options(within_a=0.0)),
+        (1, 14, Options(within_a=0.0, turn_240=True, aim=Aim.LEGS)),
+        (2, 14, Options(within_a=0.0, max_landings=3)),
+        (3, 14, Options(within_a=0.0, aim=Aim.LEGS)),
+        (4, 13, Options(within_a=0.0, max_landings=5)),
+        (5, 13, Options(within_a=0.0)),
+        (6, 15, Options(within_a=0.0, max_landings=1)),
+        (7, 15, Options(within_a=0.0, max_landings=0)),
+        (8, 12, Options(within_a=0.0, aim=Aim.LEGS)),
+        (12, 14, Options(within_a=0.0, turn_240=True, max_landings=4)),
+        (13, 14, Options(within_a=0.5)),
+        (18, 12, Options(within_a=0.5, aim=Aim.LEGS)),
+    ],
+)
+def test_plan_is_the_best_of_all_patterns_of_legs(seed: int, free: int, options: Options) -> None:
+    installation = plain_installation(seed, free)
+    scenarios = some_scenarios(seed, installation, count=4)
+    signs, landings = every_pattern(installation, options)
+    values = figures(installation, scenarios, signs)
+    plan = plan_arrangement(installation, scenarios, options)
+    assert plan.is_proven
+    left = np.ones(len(signs), dtype=bool)
+    for result in plan.objectives:
+        assert result.is_proven, result.name
+        if result.name is ObjectiveName.EFFORT:
+            assert result.value == landings[left].min()
+            left &= landings == landings[left].min()
+            continue
+        best = values.of(result.name)[left].min()
+        assert result.value == pytest.approx(best, abs=MILLIAMP), result.name
+        assert result.bound <= best + 1e-6, result.name
+        left &= values.of(result.name) <= result.value + options.within_a + 1e-6
+    assert plan.bound_peak_neutral_a <= values.neutral.min() + 1e-6
