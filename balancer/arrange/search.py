@@ -247,8 +247,10 @@ class LegSearch:
             values = (block.astype(np.int64) @ self._counted.costs + self._counted.base).astype(float)
         step = STEP_A if self._objective is not None else 1.0
         for index in np.argsort(values, kind="stable"):
-            if values[index] > self._best - step or self.budget.is_spent:
+            if values[index] > self._best - step:
                 break
+            if self.budget.is_spent:
+                return False
             exact = self.accept(block[index])
             if exact is not None and exact <= self._best - step:
                 self._best, self._answer = exact, block[index].copy()

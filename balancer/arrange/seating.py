@@ -10,7 +10,7 @@ from ortools.sat.python import cp_model
 
 from balancer.arrange.clock import Clock
 from balancer.arrange.seats import Part, Placement, Unit, removal_effort
-from balancer.arrange.solve import solve
+from balancer.arrange.solve import SolveStatus, solve
 from balancer.panel import Arrangement, Panel
 
 _SEAT_WORK_S = 20.0
@@ -160,6 +160,8 @@ class Seater:
         self.max_landings = max_landings
         self._clock = clock
         self._known: dict[tuple[tuple[int, ...], ...], Seating | None] = {}
+        self.has_given_up = False
+        """Whether some answer was left undecided: then no seats found does not mean that there are none."""
 
     def least_effort(self, signs: tuple[tuple[int, ...], ...]) -> Seating | None:
         """Seating of least effort, then least reach, for a pattern of every unit; None where there is none."""
@@ -214,6 +216,7 @@ class Seater:
         model.minimize(seats.effort * _REACH_RANGE + seats.reach)
         pin(seats)
         solved = solve(model, seats.flat, self._clock, _SEAT_WORK_S)
+        self.has_given_up |= solved.status is SolveStatus.UNKNOWN
         if not solved.status.has_answer:
             return None
         return Seating(self._units, seats.seating(solved.values).placements)

@@ -99,8 +99,9 @@ class Stages:
         )
         found = search.minimise_count(self.problem.effort, self.answer, start)
         self._take(found)
-        value, bound, proved_by = self.effort, self.effort if found.is_complete else 0, "search"
-        if not found.is_complete and not self.clock.is_stopped:
+        is_exhaustive = self.is_exhaustive(found)
+        value, bound, proved_by = self.effort, self.effort if is_exhaustive else 0, "search"
+        if not is_exhaustive and not self.clock.is_stopped:
             bound, proved_by = self._solve_effort(), "solver"
             value = self.effort
         is_proven = bound >= value
@@ -115,6 +116,10 @@ class Stages:
 
     def _budget(self) -> Budget:
         return Budget(_SEARCH_WORK, lambda: self.clock.is_stopped)
+
+    def is_exhaustive(self, found: Found) -> bool:
+        """Whether a search has looked at every answer, and every one that it passed over has no seats for certain."""
+        return found.is_complete and not self.seater.has_given_up
 
     def _take(self, found: Found) -> None:
         if found.answer is not None:
@@ -243,7 +248,7 @@ class _PeakTask:
         if found.answer is not None:
             self.answer, self.value = found.answer, found.value
         self.stages.report(self.rows.name, self.value, 0.0)
-        return (max(0.0, self.value - STEP_A), "search") if found.is_complete else (0.0, "")
+        return (max(0.0, self.value - STEP_A), "search") if self.stages.is_exhaustive(found) else (0.0, "")
 
     def decide(self) -> tuple[float, str]:
         """Ask the solver whether anything is below a level, and close in from both sides."""

@@ -23,7 +23,7 @@ _BLOCK = 1 << 13
 
 Placing = dict[str, Landing]
 Signs = tuple[int, ...]
-"""For every circuit: +1 with its 120 V part on leg A, -1 on leg B, 0 where it has none, is not landed, or is unknown."""
+"""For every circuit: +1 with its 120 V part on leg A, -1 on leg B, 0 where there is none or its pole is unknown."""
 
 
 @dataclass(frozen=True)

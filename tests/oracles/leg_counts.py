@@ -1,7 +1,7 @@
 """Every pattern of legs of a larger plain panel, counted outright.
 
-Where single-pole breakers may go anywhere, legs can be chosen freely as long as each has spaces enough: whatever stays on
-its leg stays in its space, and a breaker that changes legs takes one landing. A shared-neutral pair takes a space on
+Where single-pole breakers may go anywhere, legs can be chosen freely as long as each has spaces enough: whatever stays
+on its leg stays in its space, and a breaker that changes legs takes one landing. A shared-neutral pair takes a space on
 either leg and is turned over where it is, in two landings; so is a 120/240 V circuit.
 """
 

@@ -197,3 +197,12 @@ def plain_installation(seed: int, free: int, vacant: int = 1) -> Installation:
         load = Load() if index % 8 == 5 else load_120(rng)
         wall.add(*([] if index % 8 == 7 else [numbers[index]]), load=load)
     return Installation(panel=wall.panel, circuits=tuple(wall.circuits))
+
+
+def short_conductors(seed: int, spaces: int = 14) -> Installation:
+    """Give a full panel in which every conductor reaches the next row and no further: legs are easy, seats are not."""
+    rng = np.random.default_rng(seed)
+    wall = Wall(rng, Panel(spaces=ordinary_spaces(spaces)))
+    for space in range(1, spaces + 1):
+        wall.add(space, slack_in=1.0)
+    return Installation(panel=wall.panel, circuits=tuple(wall.circuits))

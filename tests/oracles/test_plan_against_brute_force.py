@@ -1,10 +1,16 @@
-"""Plans against every arrangement of small panels, listed outright, and against every pattern of legs of larger ones."""
+"""Plans against every arrangement of small panels and every pattern of legs of larger ones, listed outright."""
 
 import numpy as np
 import pytest
 from oracles.brute_force import Cost, Enumeration, Figures, enumerate_arrangements, figures, keeps_main, pattern
 from oracles.leg_counts import every_pattern
-from oracles.made_up_panels import plain_installation, small_installation, some_options, some_scenarios
+from oracles.made_up_panels import (
+    plain_installation,
+    short_conductors,
+    small_installation,
+    some_options,
+    some_scenarios,
+)
 
 from balancer.arrange.plan import plan_arrangement
 from balancer.arrange.results import Aim, ObjectiveName, Options, Plan
@@ -128,3 +134,11 @@ def test_plan_is_the_best_of_all_patterns_of_legs(seed: int, free: int, options:
         assert result.bound <= best + 1e-6, result.name
         left &= values.of(result.name) <= result.value + options.within_a + 1e-6
     assert plan.bound_peak_neutral_a <= values.neutral.min() + 1e-6
+
+
+@pytest.mark.parametrize("seed", range(4))
+def test_plan_is_proven_where_most_legs_have_no_seats(seed: int) -> None:
+    installation, options = short_conductors(seed), Options(within_a=0.0)
+    scenarios = some_scenarios(seed, installation)
+    plan = plan_arrangement(installation, scenarios, options)
+    assert_objectives_agree(plan, Answers(enumerate_arrangements(installation, options), scenarios))
