@@ -36,8 +36,8 @@ from balancer.commands.options import (
 @output_options()
 def tradeoff(files: InputFiles, wishes: Wishes, upto: int, output: Output) -> int:
     """Show what each further landing buys, and where the curve goes flat."""
-    from balancer.arrange.tradeoff import trade_landings
     from balancer.arrange.results import Stop
+    from balancer.arrange.tradeoff import trade_landings
     from balancer.commands.failures import INTERRUPTED
     from balancer.commands.inputs import planning_choices, read_installation, read_scenarios_of
     from balancer.commands.progress import ProgressLine

@@ -16,7 +16,7 @@ right,2,120,7,20,pair
 def test_check_of_a_sound_panel_ends_with_zero(run: Run, house: Path) -> None:
     result = run("check", house)
     assert result.exit_code == 0
-    assert "house.csv" in result.stdout
+    assert "house.csv" in "".join(result.stdout.splitlines()[:5]), "a long path is folded"
     assert result.stderr == ""
 
 

@@ -216,7 +216,8 @@ def test_a_finished_plan_is_shown_when_what_follows_is_interrupted(
 ) -> None:
     planner = stand_in(monkeypatch, StandInPlanner(moves=MOVES))
     monkeypatch.setattr(
-        "balancer.arrange.tradeoff.trade_landings", lambda *_: Tradeoff(points=(), flat_from=None, stop=Stop.INTERRUPTED)
+        "balancer.arrange.tradeoff.trade_landings",
+        lambda *_: Tradeoff(points=(), flat_from=None, stop=Stop.INTERRUPTED),
     )
     result = run("plan", house)
     assert len(planner.asked) == 1
