@@ -109,9 +109,9 @@ class LegModel:
         """Exclude one answer."""
         self._model.add_bool_or(v.negated() if taken else v for v, taken in zip(self._taken, answer, strict=True))
 
-    def decide(self, work_s: float, hint: Answer | None = None, workers: int = 1) -> Decision:
+    def decide(self, work_s: float, hint: Answer | None = None) -> Decision:
         """Find an answer that keeps every limit to within the rounding, or prove that there is none."""
-        return self._with_cuts(work_s, hint, workers)
+        return self._with_cuts(work_s, hint)
 
     def minimise_effort(self, work_s: float, hint: Answer | None = None) -> Decision:
         """Find the answer whose seats cost the least effort under the limits; OPTIMAL says proven."""
@@ -120,17 +120,17 @@ class LegModel:
             raise ValueError(message)
         self._model.minimize(self._seats.effort)
         try:
-            return self._with_cuts(work_s, hint, 1)
+            return self._with_cuts(work_s, hint)
         finally:
             self._model.clear_objective()  # type: ignore[no-untyped-call]
 
-    def _with_cuts(self, work_s: float, hint: Answer | None, workers: int) -> Decision:
+    def _with_cuts(self, work_s: float, hint: Answer | None) -> Decision:
         while True:
             self._model.clear_hints()  # type: ignore[no-untyped-call]
             if hint is not None:
                 for variable, taken in zip(self._taken, hint, strict=True):
                     self._model.add_hint(variable, int(taken))
-            solved = solve(self._model, self._taken, self._clock, work_s, workers)
+            solved = solve(self._model, self._taken, self._clock, work_s)
             if not solved.status.has_answer:
                 return Decision(solved.status, None, solved.bound)
             answer = np.array(solved.values, dtype=np.int8)

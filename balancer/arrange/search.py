@@ -28,6 +28,9 @@ _DIRECTIONS = 6
 """Directions over 180 degrees in which the magnitude of a phasor row is bounded."""
 
 _FIRST_ROWS = 32
+_ROW_OVERHEAD = 20
+"""What comparing a sum costs beside adding one column to it."""
+
 _EXPLODED = 1 << 18
 
 
@@ -41,9 +44,9 @@ class Cap:
 
 @dataclass
 class Budget:
-    """Work that a search may still do, in row evaluations: deterministic where a clock is not."""
+    """Work that a search may still do, in column additions: deterministic where a clock is not."""
 
-    work: float = 2e9
+    work: float
     is_stopped: Callable[[], bool] = lambda: False
     """Asked now and then: the clock or Ctrl-C."""
 
@@ -201,7 +204,7 @@ class LegSearch:
         while start < len(limit) and len(block):
             end = start + size
             settled = block[:, columns].astype(np.float64) @ effects[:, start:end]
-            self.budget.work -= len(block) * (min(end, len(limit)) - start)
+            self.budget.work -= len(block) * (min(end, len(limit)) - start) * (len(columns) + _ROW_OVERHEAD)
             block = block[(np.abs(settled + offset[start:end]) <= limit[start:end]).all(axis=1)]
             start, size = end, min(512, size * 2)
         return block

@@ -16,7 +16,6 @@ from balancer.panel import Arrangement, Panel
 _SEAT_WORK_S = 20.0
 _REACH_SCALE = 10
 _RATING_SCALE = 10
-_REACH_RANGE = 1_000_000
 
 
 @dataclass(frozen=True)
@@ -164,13 +163,32 @@ class Seater:
         """Whether some answer was left undecided: then no seats found does not mean that there are none."""
 
     def least_effort(self, signs: tuple[tuple[int, ...], ...]) -> Seating | None:
-        """Seating of least effort, then least reach, for a pattern of every unit; None where there is none."""
+        """Seating of least effort for a pattern of every unit; None where there is none."""
         if signs not in self._known:
-            self._known[signs] = self._solve(signs, lambda seats: None)
+            easy = self._each_at_its_best(signs)
+            self._known[signs] = easy if easy is not None else self._solve(signs, lambda s: s.model.minimize(s.effort))
         return self._known[signs]
 
+    def _each_at_its_best(self, signs: tuple[tuple[int, ...], ...]) -> Seating | None:
+        """Every unit on its own least effort, where they do not get in each other's way: the panel as found, mostly."""
+        placements = []
+        for unit, wanted in zip(self._units, signs, strict=True):
+            matching = [placement for placement in unit.placements if placement.signs == wanted]
+            placements.append(min(matching, key=lambda placement: placement.effort))
+        parts = [part for placement in placements for part in placement.parts]
+        rows: dict[int, float] = {}
+        for placement in placements:
+            for row, rating in placement.row_rating_a:
+                rows[row] = rows.get(row, 0.0) + rating
+        seating = Seating(self._units, tuple(placements))
+        fits = len(parts) == len(set(parts))
+        fits = fits and all(rating <= self._row_limits_a.get(row, rating) for row, rating in rows.items())
+        fits = fits and (self.max_landings is None or seating.landings_changed <= self.max_landings)
+        return seating if fits else None
+
     def canonical(self, signs: tuple[tuple[int, ...], ...], seating: Seating) -> Seating:
-        """Choose among the seatings of the same effort and reach: unit by unit the earliest of its placements."""
+        """Choose among the seatings of the same effort: the least reach, then unit by unit the earliest placement."""
+        seating = self._shortest(signs, seating)
         for index in range(len(self._units)):
             settled = {self._units[i].name: seating.placements[i] for i in range(index)}
             placement = seating.placements[index]
@@ -180,6 +198,15 @@ class Seater:
             better = self._settle_one(signs, seating, settled, index)
             seating = better if better is not None else seating
         return seating
+
+    def _shortest(self, signs: tuple[tuple[int, ...], ...], seating: Seating) -> Seating:
+        """Seating of the same effort whose conductors reach least."""
+
+        def aim(seats: SeatModel) -> None:
+            seats.model.add(seats.effort <= seating.effort)
+            seats.model.minimize(seats.reach)
+
+        return self._solve(signs, aim) or seating
 
     def _settle_one(
         self,
@@ -204,7 +231,7 @@ class Seater:
 
         return self._solve(signs, pin)
 
-    def _solve(self, signs: tuple[tuple[int, ...], ...], pin: Callable[[SeatModel], None]) -> Seating | None:
+    def _solve(self, signs: tuple[tuple[int, ...], ...], aim: Callable[[SeatModel], None]) -> Seating | None:
         model = cp_model.CpModel()
         narrowed = [
             Unit(unit.circuits, tuple(p for p in unit.placements if p.signs == wanted), unit.is_optional)
@@ -213,9 +240,8 @@ class Seater:
         seats = SeatModel(model, narrowed, self._row_limits_a)
         if self.max_landings is not None:
             model.add(seats.landings_changed <= self.max_landings)
-        model.minimize(seats.effort * _REACH_RANGE + seats.reach)
-        pin(seats)
-        solved = solve(model, seats.flat, self._clock, _SEAT_WORK_S)
+        aim(seats)
+        solved = solve(model, seats.flat, self._clock, _SEAT_WORK_S, is_assignment=True)
         self.has_given_up |= solved.status is SolveStatus.UNKNOWN
         if not solved.status.has_answer:
             return None

@@ -21,10 +21,10 @@ from balancer.arrange.solve import SolveStatus
 SCENARIO_TOLERANCE_A = 0.05
 READINGS_TOLERANCE_A = 0.01
 
-_SEARCH_WORK = 3e8
-"""Row evaluations before a search hands over to the solver: one to two seconds."""
+_SEARCH_WORK = 3e9
+"""Column additions before a search hands over to the solver: one to two seconds."""
 
-_SEAT_CHECK_WORK = 2e6
+_SEAT_CHECK_WORK = 1e8
 """What one exact seat assignment takes from a search's budget."""
 
 _DECISION_WORK_S = 60.0
