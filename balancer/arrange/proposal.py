@@ -5,7 +5,7 @@ All is worked out anew from the installation and the landings, so that a fault o
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
 from functools import cached_property
 
@@ -109,15 +109,23 @@ class Proposal:
 
     @cached_property
     def immovable(self) -> frozenset[str]:
-        """Labels of what stays put, and of all that hangs on it by a body, a tie or a shared neutral."""
+        """Labels of what stays put, and of all that hangs on it."""
         landed = [circuit for circuit in self.installation.circuits if circuit.is_landed]
-        groups = [body.circuits for body in self.bodies_found]
+        held = [circuit for circuit in landed if stays_put(circuit) or circuit.poles == 2]
+        # Three hots on one neutral are wrong wherever they are.
+        held += [c for group in groups_by(landed, lambda c: c.shared_neutral) if len(group) > 2 for c in group]
+        return self.hanging_on(held)
+
+    def hanging_on(self, circuits: Iterable[Circuit]) -> frozenset[str]:
+        """Labels of some circuits and of all that hangs on them by a body, a tie or a shared neutral."""
+        landed = [circuit for circuit in self.installation.circuits if circuit.is_landed]
         joined = groups_by(landed, lambda c: c.tied) + groups_by(landed, lambda c: c.shared_neutral)
+        groups = [body.circuits for body in self.bodies_found]
         groups += [tuple(circuit.label for circuit in group) for group in joined]
-        held = {circuit.label for circuit in landed if stays_put(circuit) or circuit.poles == 2}
-        while more := {label for group in groups if held & set(group) for label in group} - held:
-            held |= more
-        return frozenset(held)
+        found = {circuit.label for circuit in circuits}
+        while more := {label for group in groups if found & set(group) for label in group} - found:
+            found |= more
+        return frozenset(found)
 
     def legs(self, pair: Pair, arrangement: Mapping[str, Landing]) -> tuple[Leg, ...]:
         """Legs that the hots of a pair are on, each once."""

@@ -10,6 +10,9 @@ from balancer.arrange.verify_places import Check
 from balancer.panel import Circuit
 from balancer.rules import check_installation, errors_of, new_errors
 
+_JUDGED_HERE = ("stab-limit",)
+"""Rules whose findings change with every breaker that comes or goes, however little it adds: checked below."""
+
 
 def _names(proposal: Proposal, circuits: Sequence[Circuit]) -> str:
     return ", ".join(proposal.name(circuit) for circuit in circuits)
@@ -158,10 +161,12 @@ def _stabs_overloaded(proposal: Proposal) -> Iterator[str]:
     limit_a = proposal.panel.stab_a
     if limit_a is None:
         return
+    confined = _confined(proposal)
     for row, handles in _handles_by_row(proposal).items():
         # Two circuits under one breaker have one handle.
         total_a = sum(max(circuit.breaker_a or 0.0 for circuit in circuits) for circuits in handles)
-        free = [c for circuits in handles for c in circuits if c.breaker_a and not _must_stay(proposal, c)]
+        rated = [circuit for circuits in handles for circuit in circuits if circuit.breaker_a]
+        free = [c for c in rated if c.label not in confined or not _is_as_found(proposal, c)]
         if total_a > limit_a and free:
             names = _names(proposal, free)
             yield f"row {row}: handle ratings of {total_a:g} A where stab_a allows {limit_a:g} A, with {names} there"
@@ -174,15 +179,21 @@ def _handles_by_row(proposal: Proposal) -> dict[int, list[tuple[Circuit, ...]]]:
     return rows
 
 
-def _must_stay(proposal: Proposal, circuit: Circuit) -> bool:
-    return _is_as_found(proposal, circuit) and _is_confined(proposal, circuit)
+def _confined(proposal: Proposal) -> frozenset[str]:
+    """Labels of what might have no other place; whether it has none would take a search."""
+    confined = [
+        circuit
+        for circuit in proposal.installation.circuits
+        if circuit.label in proposal.immovable or _is_choosy(proposal, circuit)
+    ]
+    return proposal.hanging_on(confined)
 
 
-def _is_confined(proposal: Proposal, circuit: Circuit) -> bool:
-    """Whether something might keep it from every other place; whether it does would take a search."""
+def _is_choosy(proposal: Proposal, circuit: Circuit) -> bool:
+    """Whether a conductor's length or the make of the breaker leaves it few places."""
     is_short = circuit.slack_in is not None and math.isfinite(circuit.slack_in) and not proposal.options.splice
     is_special = any(terminal.half for terminal in circuit.landing) or bool(proposal.panel.bolt_on)
-    return circuit.label in proposal.immovable or is_short or is_special or _needs_neutral_bar(proposal, circuit)
+    return is_short or is_special or _needs_neutral_bar(proposal, circuit)
 
 
 def _too_many_landings(proposal: Proposal) -> Iterator[str]:
@@ -197,10 +208,10 @@ def _errors_created(proposal: Proposal) -> Iterator[str]:
     by_label = proposal.installation.by_label
     for finding in new_errors(before, check_installation(proposal.installation, proposal.as_left)):
         circuits = frozenset(finding.circuits)
-        if any(rule == finding.rule and circuits < others for rule, others in struck):
-            continue
+        is_old = any(rule == finding.rule and circuits < others for rule, others in struck)
         # A circuit that had no place before may bring an error with it, wherever it is put.
-        if all(by_label[label].is_landed for label in finding.circuits):
+        is_brought = not all(by_label[label].is_landed for label in finding.circuits)
+        if not is_old and not is_brought and finding.rule not in _JUDGED_HERE:
             yield f"the plan creates an error ({finding.rule}): {finding.message}"
 
 

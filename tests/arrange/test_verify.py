@@ -1,5 +1,7 @@
 """The solver-free re-check: for every check an arrangement that passes and one that does not."""
 
+import subprocess
+import sys
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass, field
 from typing import Any
@@ -87,6 +89,13 @@ GOOD = {
         row("1b", "1b", **FIXED),
         row("5", "5", **PAIR),
     ],
+    "a pair on one leg, one tied to three on one neutral": [
+        row("1", "1", **PAIR, **TIED),
+        row("5", "5", **PAIR),
+        row("3", "3", shared_neutral="n", **TIED),
+        row("4", "4", shared_neutral="n"),
+        row("8", "8", shared_neutral="n"),
+    ],
     "three on one neutral, all new": [row("", "1", **PAIR), row("", "3", **PAIR), row("", "5", **PAIR)],
 }
 
@@ -125,7 +134,7 @@ BAD = {
     "one of two tied": ([row("1", "1", **TIED), row("3", "5", **TIED)], "are tied and did not move together"),
     "tied ones not brought together": ([row("1", "1", **TIED), row("", "4", **TIED)], "do not stand in one line"),
     "tied ones with a gap": ([row("1", "1", **TIED), row("", "5", **TIED)], "do not stand in one line"),
-    "a pair on one leg made of new errors": (
+    "a pair put on one leg": (
         [row("1", "1", **PAIR), row("3", "5", **PAIR)],
         "the plan creates an error (shared-neutral-one-leg)",
     ),
@@ -266,12 +275,28 @@ def test_a_row_above_the_stab_limit_holds_only_what_cannot_leave(judge: Judge, s
     assert (not any("stab_a allows 100 A" in each for each in details)) == is_well
 
 
-def test_a_row_that_stays_above_the_stab_limit_with_less_in_it_is_no_new_error(judge: Judge) -> None:
-    rows = [row("1", "1", breaker_a=60.0, is_fixed=True), row("2", "2", breaker_a=60.0, is_fixed=True)]
-    tandem = [row("4a", "4a", breaker_a=20.0), row("4b", "4b", breaker_a=20.0)]
-    assert judge([*rows, row("6", "8"), *tandem], stab_a=100.0) == []
-    two_handles = [row("1", "1", breaker_a=110.0, is_fixed=True), row("2", "4", breaker_a=20.0)]
-    assert judge(two_handles, stab_a=100.0) == []
+def test_a_row_above_the_stab_limit_may_get_lighter(judge: Judge) -> None:
+    rows = [row("1", "1", breaker_a=110.0, is_fixed=True), row("2", "4", breaker_a=20.0)]
+    assert judge(rows, stab_a=100.0) == []
+
+
+def test_a_breaker_of_unknown_rating_adds_nothing_to_a_stab(judge: Judge) -> None:
+    rows = [row("1", "1", breaker_a=110.0, is_fixed=True), row("4", "2", breaker_a=None)]
+    assert judge(rows, stab_a=100.0) == []
+
+
+def test_what_hangs_on_a_breaker_that_cannot_leave_may_stay(judge: Judge) -> None:
+    rows = [row("1", "1", breaker_a=60.0, **PAIR), row("3", "3", is_fixed=True, **PAIR), row("2", "2", breaker_a=60.0)]
+    details = judge([*rows[:2], row("2", "2", breaker_a=60.0, is_fixed=True)], stab_a=100.0)
+    assert details == []
+    (detail,) = judge(rows, stab_a=100.0)
+    assert detail.endswith("with c3 (2) there")
+
+
+def test_an_error_that_strikes_fewer_circuits_than_before_is_not_new(judge: Judge) -> None:
+    # Two halves stand where none may; one of them is taken out to mend a pair.
+    rows = [row("1a", "3", **PAIR), row("1b", "1b"), row("5", "5", **PAIR)]
+    assert judge(rows, tandem_spaces=frozenset({2})) == []
 
 
 def test_two_circuits_under_one_breaker_have_one_handle(judge: Judge) -> None:
@@ -282,3 +307,11 @@ def test_two_circuits_under_one_breaker_have_one_handle(judge: Judge) -> None:
 def test_a_spare_and_a_new_circuit_count_no_landing(judge: Judge) -> None:
     rows = [row("1", "4", **SPARE), row("", "6"), row("3", "3")]
     assert judge(rows, Options(max_landings=0)) == []
+
+
+def test_the_re_check_knows_nothing_of_the_model_that_it_judges() -> None:
+    code = "import balancer.arrange.verify, sys; print(*sys.modules)"
+    loaded = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=True).stdout.split()
+    assert "balancer.arrange.verify_moves" in loaded
+    model = ("ortools", *(f"balancer.arrange.{name}" for name in ("seats", "seating", "legs", "search", "leg_model")))
+    assert [name for name in model if name in loaded] == []

@@ -239,7 +239,8 @@ def test_the_bound_of_the_neutral_is_below_all(plan: Plan) -> None:
     (detail,) = details_of(
         replace(plan, bound_peak_neutral_a=optimum_a + 0.01, optimum_peak_neutral_a=optimum_a + 0.02)
     )
-    assert detail.startswith("the peak neutral as left") and "is below its bound" in detail
+    assert detail.startswith("the peak neutral as left")
+    assert "is below its bound" in detail
 
 
 def test_the_neutral_is_near_the_optimum_where_it_comes_first(plan: Plan) -> None:
