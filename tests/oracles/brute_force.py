@@ -56,7 +56,7 @@ class Enumeration:
 
 def enumerate_arrangements(installation: Installation, options: Options) -> Enumeration:
     """List every arrangement that keeps every constraint but the limit on the legs."""
-    placings = [_placings(installation, options, unit) for unit in _units(installation)]
+    placings = placings_of_units(installation, options)
     result = Enumeration(installation, placings=placings)
     costs = [[_cost(installation, unit, placing) for placing in unit] for unit in placings]
     stuck = _unavoidable_ratings(installation, placings)
@@ -80,6 +80,11 @@ def enumerate_arrangements(installation: Installation, options: Options) -> Enum
 
     descend(0, frozenset(), {}, 0, Cost(0, 0.0))
     return result
+
+
+def placings_of_units(installation: Installation, options: Options) -> list[list[Placing]]:
+    """Every allowed place of every unit on its own."""
+    return [_placings(installation, options, unit) for unit in _units(installation)]
 
 
 def pattern(installation: Installation, arrangement: Placing) -> Signs:
