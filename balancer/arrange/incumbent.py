@@ -48,7 +48,7 @@ class Heuristic:
         """Peak of the objective [A], or None where an answer breaks a cap or counter."""
         if any(counter.value(answer) > counter.cap for counter in self.counters):
             return None
-        if any(cap.rows.peak(answer) > cap.limit_a + _ROUNDING_A for cap in self.caps):
+        if not all(cap.is_kept(answer) for cap in self.caps):
             return None
         if any(answer[list(group)].sum() > 1 for group in self.problem.groups if len(group) > 1):
             return None

@@ -158,7 +158,7 @@ class Planner:
     def _is_valid(self, answer: Answer) -> bool:
         return (
             all(counter.value(answer) <= counter.cap for counter in self._counters)
-            and all(cap.rows.peak(answer) <= cap.limit_a for cap in self._caps)
+            and all(cap.is_kept(answer) for cap in self._caps)
             and self._seater.least_effort(self.problem.signs(answer)) is not None
         )
 
@@ -169,24 +169,39 @@ class Planner:
         for cap in self._caps:
             model.limit(cap.rows, cap.limit_a)
         decision = model.decide(_FIRST_ANSWER_WORK_S)
-        if decision.answer is not None and self._is_valid(decision.answer):
-            return decision.answer
+        while decision.answer is not None:
+            if self._is_valid(decision.answer):
+                return decision.answer
+            # Above a limit by less than the model's rounding.
+            model.forbid(decision.answer)
+            decision = model.decide(_FIRST_ANSWER_WORK_S)
         if decision.status is SolveStatus.INFEASIBLE:
             raise self._reason()
         message = "no arrangement was found before the limit, and none was ruled out"
         raise NoAnswerInTime(message)
 
     def _reason(self) -> InfeasibleError:
-        """Tell a leg limit from a lack of seats."""
-        model = LegModel(self.problem, self._counters, self.clock)
-        model.seat(self.options.max_landings)
-        if self._caps and model.decide(_FIRST_ANSWER_WORK_S).answer is not None:
-            main_a = self.installation.panel.main_a or 0.0
+        """Tell a leg limit, alone or with the cap on landings, from a lack of seats."""
+        most = self.options.max_landings
+        if not self._caps or not self._has_answer(most, keeps_main=False):
+            return explain_no_seats(self.installation, self.options, self.clock)
+        main_a = self.installation.panel.main_a or 0.0
+        above = f"some scenario puts more than the {main_a:g} A main on a leg"
+        if most is not None and self._has_answer(None, keeps_main=True):
             return InfeasibleError(
-                [f"in every arrangement some scenario puts more than the {main_a:g} A main on a leg"],
-                ["check the scenarios and the loads, or move load off this panel"],
+                [f"at most {most} landings may change, and in every arrangement that leaves {above}"],
+                ["allow more with --landings"],
             )
-        return explain_no_seats(self.installation, self.options, self.clock)
+        remedy = "check the scenarios and the loads, or move load off this panel"
+        return InfeasibleError([f"in every arrangement {above}"], [remedy])
+
+    def _has_answer(self, max_landings: int | None, *, keeps_main: bool) -> bool:
+        """Whether the solver finds an arrangement under part of the constraints."""
+        model = LegModel(self.problem, self.problem.counters, self.clock)
+        model.seat(max_landings)
+        for cap in self._caps if keeps_main else ():
+            model.limit(cap.rows, cap.limit_a)
+        return model.decide(_FIRST_ANSWER_WORK_S).answer is not None
 
     def plan(self) -> Plan:
         """Close every objective in turn and settle the seats."""

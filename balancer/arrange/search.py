@@ -23,6 +23,9 @@ STEP_A = 1e-4
 _MARGIN_A = 1e-7
 """Float rounding allowed for before a partial answer is given up [A]."""
 
+_ROUNDING_A = 1e-9
+"""Float rounding allowed for when an answer is held against a limit [A]: 0.1 + 0.2 is no more than 0.3."""
+
 _BLOCK = 8192
 _DIRECTIONS = 6
 """Directions over 180 degrees in which the magnitude of a phasor row is bounded."""
@@ -40,6 +43,10 @@ class Cap:
 
     rows: Rows
     limit_a: float
+
+    def is_kept(self, answer: Answer) -> bool:
+        """Whether an answer keeps the limit, but for the rounding of floats."""
+        return self.rows.peak(answer) <= self.limit_a + _ROUNDING_A
 
 
 @dataclass

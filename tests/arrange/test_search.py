@@ -43,7 +43,7 @@ def keeps(answer: Answer, caps: list[Cap], counters: tuple[Counter, ...]) -> boo
 
 
 def search(problem: LegProblem, caps: list[Cap], rows: Rows, accept: Callable[[Answer], float | None]) -> Found:
-    return LegSearch(problem, caps, problem.counters, Budget(), accept).minimise_peak(rows, None, float("inf"))
+    return LegSearch(problem, caps, problem.counters, Budget(1e9), accept).minimise_peak(rows, None, float("inf"))
 
 
 @pytest.mark.parametrize("seed", range(6))
@@ -79,7 +79,7 @@ def test_answers_without_seats_are_passed_over() -> None:
 def test_lowest_count_is_the_lowest_of_all_answers(seed: int) -> None:
     problem = problem_of(seed)
     caps = [Cap(problem.neutral, 1.2 * search(problem, [], problem.neutral, problem.neutral.peak).value)]
-    task = LegSearch(problem, caps, problem.counters, Budget(), lambda a: float(problem.landings.value(a)))
+    task = LegSearch(problem, caps, problem.counters, Budget(1e9), lambda a: float(problem.landings.value(a)))
     found = task.minimise_count(problem.landings, None, 1e6)
     best = min(problem.landings.value(a) for a in answers(problem) if keeps(a, caps, problem.counters))
     assert (found.is_complete, found.value) == (True, best)
@@ -89,7 +89,7 @@ def test_lowest_count_is_the_lowest_of_all_answers(seed: int) -> None:
 def test_survivors_are_all_answers_that_keep_the_caps(seed: int) -> None:
     problem = problem_of(seed)
     caps = [Cap(problem.neutral, 1.3 * search(problem, [], problem.neutral, problem.neutral.peak).value)]
-    survivors = LegSearch(problem, caps, problem.counters, Budget(), problem.neutral.peak).survivors(10_000)
+    survivors = LegSearch(problem, caps, problem.counters, Budget(1e9), problem.neutral.peak).survivors(10_000)
     expected = {tuple(a) for a in answers(problem) if keeps(a, caps, problem.counters)}
     assert survivors is not None
     assert {tuple(answer) for answer in survivors} == expected
@@ -97,7 +97,7 @@ def test_survivors_are_all_answers_that_keep_the_caps(seed: int) -> None:
 
 def test_more_survivors_than_asked_for_are_none() -> None:
     problem = problem_of(0)
-    assert LegSearch(problem, [], problem.counters, Budget(), problem.neutral.peak).survivors(1) is None
+    assert LegSearch(problem, [], problem.counters, Budget(1e9), problem.neutral.peak).survivors(1) is None
 
 
 def test_search_with_a_spent_budget_proves_nothing() -> None:
@@ -109,7 +109,7 @@ def test_search_with_a_spent_budget_proves_nothing() -> None:
 
 
 def test_budget_spent_on_the_last_block_proves_nothing() -> None:
-    problem, budget = problem_of(0), Budget()
+    problem, budget = problem_of(0), Budget(1e9)
 
     def accept(answer: Answer) -> None:
         budget.work = 0.0  # all spent on the seats of one answer; the others were never looked at
@@ -121,7 +121,7 @@ def test_budget_spent_on_the_last_block_proves_nothing() -> None:
 def test_start_that_nothing_beats_is_kept() -> None:
     problem = problem_of(2)
     best = search(problem, [], problem.neutral, problem.neutral.peak)
-    again = LegSearch(problem, [], problem.counters, Budget(), problem.neutral.peak)
+    again = LegSearch(problem, [], problem.counters, Budget(1e9), problem.neutral.peak)
     assert again.minimise_peak(problem.neutral, best.answer, best.value).answer is best.answer
 
 
