@@ -14,6 +14,7 @@ from oracles.made_up_panels import (
 
 from balancer.arrange.plan import plan_arrangement
 from balancer.arrange.results import Aim, ObjectiveName, Options, Plan
+from balancer.arrange.stages import SCENARIO_TOLERANCE_A
 from balancer.electrical.scenarios import Scenarios
 from balancer.errors import InfeasibleError
 from balancer.panel import Installation
@@ -142,3 +143,49 @@ def test_plan_is_proven_where_most_legs_have_no_seats(seed: int) -> None:
     scenarios = some_scenarios(seed, installation)
     plan = plan_arrangement(installation, scenarios, options)
     assert_objectives_agree(plan, Answers(enumerate_arrangements(installation, options), scenarios))
+
+
+@pytest.fixture
+def no_search(monkeypatch: pytest.MonkeyPatch) -> None:
+    """Leave everything to the solver, as on panels that are too large to search."""
+    monkeypatch.setattr("balancer.arrange.stages._SEARCH_WORK", 0.0)
+
+
+def assert_solved_objectives_agree(plan: Plan, answers: Answers) -> None:
+    """Peaks proven to the tolerance, effort exactly; the mean neutral is not proven without the search."""
+    for result in plan.objectives:
+        if result.name is ObjectiveName.MEAN_NEUTRAL:
+            assert result.bound <= answers.best(result.name) + 1e-6
+            continue
+        assert result.is_proven, result.name
+        if result.name is ObjectiveName.EFFORT:
+            assert (len(plan.removed_spares), plan.effort) == pytest.approx(Answers._key(answers.least), abs=1e-6)
+            answers.hold_cost(answers.least)
+            continue
+        best = answers.best(result.name)
+        assert best - 1e-6 <= result.value <= best + SCENARIO_TOLERANCE_A + 1e-6, result.name
+        assert result.bound <= best + 1e-6, result.name
+        answers.hold(result.name, result.value)
+
+
+@pytest.mark.usefixtures("no_search")
+@pytest.mark.parametrize("seed", range(300, 330))
+def test_plan_by_the_solver_alone_is_the_best_within_the_tolerance(seed: int) -> None:
+    installation, options = small_installation(seed), some_options(seed)
+    scenarios = some_scenarios(seed, installation)
+    listed = enumerate_arrangements(installation, options)
+    answers = Answers(listed, scenarios)
+    plan = outcome(installation, scenarios, options)
+    assert (plan is not None) == bool(answers.left.any())
+    if plan is not None:
+        assert listed.allows(plan.as_left)
+        assert_solved_objectives_agree(plan, answers)
+
+
+@pytest.mark.usefixtures("no_search")
+@pytest.mark.parametrize("seed", range(4))
+def test_solver_alone_finds_legs_that_have_seats(seed: int) -> None:
+    installation, options = short_conductors(seed), Options(within_a=0.0)
+    scenarios = some_scenarios(seed, installation)
+    plan = plan_arrangement(installation, scenarios, options)
+    assert_solved_objectives_agree(plan, Answers(enumerate_arrangements(installation, options), scenarios))
