@@ -3,7 +3,7 @@
 A partial answer settles the first units of a fixed order. It dies when in some row and some direction what it has added
 up lies further from zero than the limit plus what the unsettled units can still take back, or when a counter can no
 longer be kept. Complete answers are judged exactly, in every row. A search that ends within its budget has proven that
-no answer is better than what it returns by more than `STEP_A`.
+no answer is better than what it returns by more than its `step_a`.
 """
 
 from __future__ import annotations
@@ -15,13 +15,19 @@ from dataclasses import dataclass, field
 import numpy as np
 from numpy.typing import NDArray
 
-from balancer.arrange.legs import Answer, Counter, FloatMatrix, LegProblem, Rows
+from balancer.arrange.legs import Answer, Counter, FloatMatrix, LegProblem, Rows, mirror_choice
 
 STEP_A = 1e-4
 """A better answer must be better by this [A]; what is closer counts as equal."""
 
+_COARSE_STEP_A = 1e-3
+"""The same where there are so many choices that single precision pays (measured: half the time)."""
+
+_COARSE_FROM = 32
+"""Choices from which single precision pays."""
+
 _MARGIN_A = 1e-7
-"""Float rounding allowed for before a partial answer is given up [A]."""
+"""Float rounding allowed for before a partial answer is given up [A], in double precision."""
 
 _ROUNDING_A = 1e-9
 """Float rounding allowed for when an answer is held against a limit [A]: 0.1 + 0.2 is no more than 0.3."""
@@ -31,6 +37,10 @@ _DIRECTIONS = 6
 """Directions over 180 degrees in which the magnitude of a phasor row is bounded."""
 
 _FIRST_ROWS = 32
+_SAMPLE = 512
+_TUNED_FROM = 2048
+"""Partial answers in a block from which it pays to try on a sample which rows kill most."""
+
 _ROW_OVERHEAD = 20
 """What comparing a sum costs beside adding one column to it."""
 
@@ -85,8 +95,39 @@ class _Limits:
     fixed_limit: FloatMatrix
     is_objective: NDArray[np.bool_]
 
-    def limit(self, best: float) -> FloatMatrix:
-        return np.where(self.is_objective, min(best - STEP_A, 1e9), self.fixed_limit) + _MARGIN_A
+    def limit(self, level_a: float) -> FloatMatrix:
+        """Limit of every row where the objective must reach a level [A]."""
+        return np.where(self.is_objective, min(level_a, 1e9), self.fixed_limit)
+
+
+@dataclass(eq=False)
+class _Level:
+    """Rows that can kill partial answers of one depth while the best value is `best`."""
+
+    best: float
+    offset: FloatMatrix
+    effects: FloatMatrix
+    """Shape (settled choices, rows)."""
+    limit: FloatMatrix
+    is_tuned: bool = False
+
+    def tune(self, sample: FloatMatrix) -> None:
+        """Put those rows first that together kill most of a sample of partial answers."""
+        kills = np.abs(sample @ self.effects + self.offset) > self.limit
+        alive = np.ones(len(kills), dtype=bool)
+        first: list[int] = []
+        while len(first) < 2 * _FIRST_ROWS:
+            counts = kills[alive].sum(axis=0)
+            row = int(counts.argmax())
+            if counts[row] == 0:
+                break
+            first.append(row)
+            alive &= ~kills[:, row]
+        rest = np.argsort(-kills.sum(axis=0), kind="stable")
+        order = np.concatenate([np.array(first, dtype=int), rest[~np.isin(rest, first)]])
+        self.offset, self.limit = self.offset[order], self.limit[order]
+        self.effects = np.ascontiguousarray(self.effects[:, order])
+        self.is_tuned = True
 
 
 def project(rows: Rows, directions: int = _DIRECTIONS) -> tuple[FloatMatrix, FloatMatrix]:
@@ -119,11 +160,30 @@ class LegSearch:
     _best: float = math.inf
     _answer: Answer | None = None
     _order: list[tuple[int, ...]] = field(default_factory=list)
-    _levels: dict[int, tuple[float, FloatMatrix, FloatMatrix, FloatMatrix]] = field(default_factory=dict)
+    _levels: dict[int, _Level] = field(default_factory=dict)
+    _is_mirrored: bool = False
+
+    @property
+    def _is_coarse(self) -> bool:
+        return len(self.problem.choices) >= _COARSE_FROM
+
+    @property
+    def step_a(self) -> float:
+        """By how much [A] a better answer must be better to be found."""
+        return _COARSE_STEP_A if self._is_coarse else STEP_A
+
+    def _margin_a(self) -> float:
+        """Bound the rounding [A] that a sum may carry: terms times unit roundoff times size."""
+        if not self._is_coarse:
+            return _MARGIN_A
+        size = float((np.abs(self._rows.offset) + np.abs(self._rows.effects).sum(axis=1)).max(initial=0.0))
+        return (len(self.problem.choices) + 2) * float(np.finfo(np.float32).eps) / 2.0 * size
 
     def minimise_peak(self, objective: Rows, start: Answer | None, value: float) -> Found:
         """Lowest peak of a quantity; `start` is an accepted answer to beat, of that value [A]."""
         self._objective, self._answer, self._best = objective, start, value
+        held = [cap.rows for cap in self.caps if not cap.rows.is_constant]
+        self._is_mirrored = mirror_choice(self.problem, [objective, *held], self.counters) is not None
         return self._run()
 
     def minimise_count(self, counter: Counter, start: Answer | None, value: float) -> Found:
@@ -149,7 +209,8 @@ class LegSearch:
         """Search; `take` gets blocks of complete answers that keep every limit. True when nothing was left."""
         self._prepare()
         stack = [np.zeros((1, len(self.problem.choices)), dtype=np.int8)]
-        depths = [0]
+        # Of an answer and its mirror image one is enough: the first unit stays on its reference leg.
+        depths = [1 if self._is_mirrored else 0]
         while stack:
             if self.budget.is_spent:
                 return False
@@ -178,6 +239,7 @@ class LegSearch:
         high = np.stack([np.maximum(effects[:, list(g)].max(axis=1), 0.0) for g in self.problem.groups] or [offset * 0])
         self._centre, self._half = (low + high) / 2.0, (high - low) / 2.0
         self._rows = self._relevant(_Limits(offset, effects, fixed, moving))
+        self._margin = self._margin_a()
         weights = self._weights()
         self._sequence = sorted(range(len(self.problem.groups)), key=lambda g: (-weights[g], g))
         self._order = [self.problem.groups[g] for g in self._sequence]
@@ -192,7 +254,7 @@ class LegSearch:
     def _weights(self) -> FloatMatrix:
         """Weigh units by how much of what must cancel is theirs: the heaviest are settled first."""
         reach = np.abs(self._rows.offset + self._centre.sum(axis=0)) + self._half.sum(axis=0)
-        excess = np.maximum(reach - self._rows.limit(min(self._best, 1e6)), 0.0)
+        excess = np.maximum(reach - self._rows.limit(min(self._best, float(reach.max(initial=0.0)))), 0.0)
         return np.asarray(self._half @ (excess * excess))
 
     def _branch(self, block: NDArray[np.int8], depth: int) -> NDArray[np.int8]:
@@ -205,14 +267,19 @@ class LegSearch:
 
     def _prune(self, block: NDArray[np.int8], depth: int) -> NDArray[np.int8]:
         block = block[self._counters_kept(block, depth)]
-        _, offset, effects, limit = self._level(depth)
+        level = self._level(depth)
         columns = [c for group in self._order[:depth] for c in group]
+        precision = level.effects.dtype
+        if not level.is_tuned and len(block) >= _TUNED_FROM:
+            level.tune(block[:: len(block) // _SAMPLE][:, columns].astype(precision))
         start, size = 0, _FIRST_ROWS
-        while start < len(limit) and len(block):
-            end = start + size
-            settled = block[:, columns].astype(np.float64) @ effects[:, start:end]
-            self.budget.work -= len(block) * (min(end, len(limit)) - start) * (len(columns) + _ROW_OVERHEAD)
-            block = block[(np.abs(settled + offset[start:end]) <= limit[start:end]).all(axis=1)]
+        while start < len(level.limit) and len(block):
+            end = min(start + size, len(level.limit))
+            values = block[:, columns].astype(precision) @ level.effects[:, start:end]
+            values += level.offset[start:end]
+            np.abs(values, out=values)
+            self.budget.work -= len(block) * (end - start) * (len(columns) + _ROW_OVERHEAD)
+            block = block[(values <= level.limit[start:end]).all(axis=1)]
             start, size = end, min(512, size * 2)
         return block
 
@@ -226,21 +293,24 @@ class LegSearch:
             keep &= block.astype(np.int64) @ counter.costs + (counter.base + least) <= cap
         return keep
 
-    def _level(self, depth: int) -> tuple[float, FloatMatrix, FloatMatrix, FloatMatrix]:
-        """Rows that can kill at a depth, the tightest first, as (best, offset, effects, limit)."""
+    def _level(self, depth: int) -> _Level:
+        """Rows that can kill at a depth, the tightest first."""
         cached = self._levels.get(depth)
-        if cached is not None and cached[0] == self._best:
+        if cached is not None and cached.best == self._best:
             return cached
         settled, open_ = self._sequence[:depth], self._sequence[depth:]
-        limit = self._rows.limit(self._best) + self._half[open_].sum(axis=0)
+        limit = self._rows.limit(self._best - self.step_a) + self._margin + self._half[open_].sum(axis=0)
         offset = self._rows.offset + self._centre[open_].sum(axis=0)
         reach = np.abs(offset + self._centre[settled].sum(axis=0)) + self._half[settled].sum(axis=0)
         tightness = reach - limit
         rows = np.nonzero(tightness > 0)[0]
         rows = rows[np.argsort(-tightness[rows] / np.maximum(reach[rows], STEP_A), kind="stable")]
         columns = [c for group in self._order[:depth] for c in group]
-        effects = np.ascontiguousarray(self._rows.effects[rows][:, columns].T)
-        self._levels[depth] = (self._best, offset[rows], effects, limit[rows])
+        precision = np.float32 if self._is_coarse else np.float64
+        effects = np.ascontiguousarray(self._rows.effects[rows][:, columns].T.astype(precision))
+        self._levels[depth] = _Level(
+            self._best, offset[rows].astype(precision), effects, np.nextafter(limit[rows].astype(precision), np.inf)
+        )
         return self._levels[depth]
 
     def _keep_caps(self, block: NDArray[np.int8]) -> NDArray[np.int8]:
@@ -255,13 +325,15 @@ class LegSearch:
             values = np.abs(block.astype(float) @ self._objective.effects.T + self._objective.offset).max(axis=1)
         elif self._counted is not None:
             values = (block.astype(np.int64) @ self._counted.costs + self._counted.base).astype(float)
-        step = STEP_A if self._objective is not None else 1.0
+        step = self.step_a if self._objective is not None else 1.0
         for index in np.argsort(values, kind="stable"):
             if values[index] > self._best - step:
                 break
             if self.budget.is_spent:
                 return False
-            exact = self.accept(block[index])
-            if exact is not None and exact <= self._best - step:
-                self._best, self._answer = exact, block[index].copy()
+            for answer in [block[index], 1 - block[index]] if self._is_mirrored else [block[index]]:
+                exact = self.accept(answer)
+                if exact is not None and exact <= self._best - step:
+                    self._best, self._answer = exact, answer.copy()
+                    break
         return True

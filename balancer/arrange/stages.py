@@ -31,7 +31,10 @@ _DECISION_WORK_S = 60.0
 _EFFORT_WORK_S = 30.0
 _MOST_SURVIVORS = 20_000
 _FIRST_STEP = 4
-"""First step below the best answer, in tolerances; doubled on success, halved on proof that there is nothing."""
+"""First step below the best answer, in tolerances; doubled on success."""
+
+_LEAP_WORK_S = 2.0
+"""Work on a step wider than the tolerance: one that finds or refutes nothing soon gives way to the step that counts."""
 
 _ROUNDING_A = 1e-9
 
@@ -257,13 +260,14 @@ class _PeakTask:
         while self.value - bound > tolerance + _ROUNDING_A and not self.stages.clock.is_stopped:
             step = max(tolerance, min(step, (self.value - bound) / 2.0))
             level = self.value - step
-            decision = self._below(level, with_seats)
+            is_leap = step > tolerance + _ROUNDING_A
+            decision = self._below(level, with_seats, _LEAP_WORK_S if is_leap else _DECISION_WORK_S)
             if decision is None:
-                if step <= tolerance + _ROUNDING_A:
+                if not is_leap:
                     break
                 step = tolerance
             elif len(decision) == 0:
-                bound, step = max(bound, level), step / 2.0
+                bound, step = max(bound, level), tolerance
             elif self._improve(decision):
                 step *= 2.0
             elif with_seats:
@@ -273,7 +277,7 @@ class _PeakTask:
             self.stages.report(self.rows.name, self.value, bound)
         return bound, "solver"
 
-    def _below(self, level: float, with_seats: bool) -> list[Answer] | None:
+    def _below(self, level: float, with_seats: bool, work_s: float) -> list[Answer] | None:
         """Answers at or below a level: none is proof that there are none; None says that the solver gave up."""
         stages = self.stages
         model = stages.new_model()
@@ -286,7 +290,7 @@ class _PeakTask:
             pinned = mirror_choice(stages.problem, [self.rows, *held], stages.counters)
         if pinned is not None:
             model.pin_mirror(pinned)
-        decision = model.decide(_DECISION_WORK_S)
+        decision = model.decide(work_s)
         if decision.status is SolveStatus.INFEASIBLE:
             return []
         if decision.answer is None:
