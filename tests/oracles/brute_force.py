@@ -245,13 +245,24 @@ def _may_go(installation: Installation, options: Options, circuit: Circuit, land
         return False
     if any(terminal.half for terminal in landing) and not _takes_half(installation, spaces):
         return False
-    if "plug-on" in circuit.breaker_type and panel.plug_on_neutral and not panel.plug_on_neutral.issuperset(spaces):
+    if _needs_neutral_bar(panel, circuit) and not panel.plug_on_neutral.issuperset(spaces):
         return False
     if circuit.landing:
         was_bolted = circuit.landing[0].space in panel.bolt_on
         if any((space in panel.bolt_on) != was_bolted for space in spaces):
             return False
     return options.splice or _reaches(panel, circuit, landing)
+
+
+def _needs_neutral_bar(panel: Panel, circuit: Circuit) -> bool:
+    """A plug-on breaker, and a GFCI or AFCI breaker found at the bar; nobody minds where no bar is known."""
+    at_bar = [terminal.space in panel.plug_on_neutral for terminal in circuit.landing]
+    is_found_at_bar = bool(at_bar) and all(at_bar) and _takes_neutral(circuit)
+    return bool(panel.plug_on_neutral) and ("plug-on" in circuit.breaker_type or is_found_at_bar)
+
+
+def _takes_neutral(circuit: Circuit) -> bool:
+    return any(word in circuit.breaker_type for word in ("gfci", "afci", "dual function"))
 
 
 def _stays_with_body(installation: Installation, circuit: Circuit) -> bool:
@@ -312,8 +323,7 @@ def _cost(installation: Installation, unit: list[Placing], placing: Placing) -> 
             continue
         moved = sum(old != new for old, new in zip(circuit.landing, landing, strict=True))
         landings += moved
-        takes_neutral_along = any(word in circuit.breaker_type for word in ("gfci", "afci", "dual function"))
-        effort += moved * circuit.effort + (0.5 if moved and takes_neutral_along else 0.0)
+        effort += moved * circuit.effort + (0.5 if moved and _takes_neutral(circuit) else 0.0)
     spares = {label for choice in unit for label in choice if installation.by_label[label].landing}
     return landings, Cost(0 if placing else len(spares), effort)
 

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 
 import numpy as np
 
@@ -115,6 +115,21 @@ class Wall:
         else:
             self.add()
 
+    def vary_loose_breakers(self) -> None:
+        """Tie two of the breakers that stand alone, and let some be of the plug-on kind."""
+        loose = [
+            index
+            for index, circuit in enumerate(self.circuits)
+            if circuit.poles == 1 and circuit.landing and not circuit.landing[0].half and not circuit.shared_neutral
+            if circuit.role is Role.LOAD
+        ]
+        if len(loose) >= 2 and self.draw(0.25):
+            for index in self.rng.choice(loose, 2, replace=False).tolist():
+                self.circuits[index] = replace(self.circuits[index], tied="t2")
+        for index in loose:
+            if self.draw(0.15):
+                self.circuits[index] = replace(self.circuits[index], breaker_type="plug-on gfci")
+
     def break_a_pair(self) -> None:
         """Join two breakers of one row, hence of one leg, under one neutral."""
         by_row: dict[int, list[int]] = {}
@@ -136,13 +151,15 @@ class Wall:
 def small_installation(seed: int) -> Installation:
     """Give a panel of 8 spaces, full of what a real one holds and with hardly any room."""
     rng = np.random.default_rng(seed)
-    draw = rng.random(6)
+    draw = rng.random(8)
     panel = Panel(
         spaces=ordinary_spaces(8, "AB" if draw[0] < 0.7 else "BA"),
         supply=SUPPLIES[rng.integers(len(SUPPLIES))],
         tandem_spaces=frozenset({5, 6, 7, 8}) if draw[1] < 0.3 else None,
         reserved=frozenset({8}) if draw[2] < 0.2 else frozenset(),
         bolt_on=frozenset({1, 2}) if draw[3] < 0.15 else frozenset(),
+        plug_on_neutral=frozenset({1, 2, 4, 6, 7}) if draw[6] < 0.25 else frozenset(),
+        crossing_in=1.0 if draw[7] < 0.25 else 12.0,
         stab_a=60.0 if draw[4] < 0.15 else None,
         main_a=60.0 if draw[5] < 0.4 else None,
     )
@@ -156,6 +173,7 @@ def small_installation(seed: int) -> Installation:
             wall.add_new()
     if wall.draw(0.2):
         wall.break_a_pair()
+    wall.vary_loose_breakers()
     return Installation(panel=panel, circuits=tuple(wall.circuits))
 
 
