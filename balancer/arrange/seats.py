@@ -193,6 +193,15 @@ def shared_neutral_pairs(installation: Installation) -> tuple[tuple[Circuit, Cir
     return tuple((group[0], group[1]) for group in by_label.values() if len(group) == 2)
 
 
+def _keeps_company(order: Sequence[Circuit]) -> bool:
+    """Whether circuits of one tie, and those of one shared neutral, follow each other without a stranger between."""
+    for names in ([c.tied.casefold() for c in order], [c.shared_neutral.casefold() for c in order]):
+        runs = [name for name, _ in itertools.groupby(names) if name]
+        if len(runs) != len(set(runs)):
+            return False
+    return True
+
+
 @dataclass
 class _Seating:
     """Lists placements under one installation's constraints."""
@@ -305,8 +314,9 @@ class _Seating:
     def _block_moves(self, group: Sequence[Circuit]) -> Iterator[Arrangement]:
         """Seat circuits of which some have no place yet one below the other, in any order."""
         for order in itertools.permutations(group):
-            for start in self.panel.spaces:
-                yield from self._stack(list(order), start.number, {})
+            if _keeps_company(order):
+                for start in self.panel.spaces:
+                    yield from self._stack(list(order), start.number, {})
 
     def _stack(self, rest: list[Circuit], start: int | None, done: Arrangement) -> Iterator[Arrangement]:
         if not rest:

@@ -21,13 +21,17 @@ from balancer.arrange.solve import SolveStatus
 SCENARIO_TOLERANCE_A = 0.05
 READINGS_TOLERANCE_A = 0.01
 
-_SEARCH_WORK = 3e9
-"""Column additions before a search hands over to the solver: one to two seconds."""
+_ROUNDS = ((4e10, 4.0), (6e11, 60.0))
+"""Search and solver take turns, at first with a few seconds each: which of them is quick differs from panel to panel.
+
+Work of the search in column additions, of one decision by the solver in its deterministic seconds.
+"""
+
+_SEARCH_WORK = 4e10
 
 _SEAT_CHECK_WORK = 1e8
 """What one exact seat assignment takes from a search's budget."""
 
-_DECISION_WORK_S = 60.0
 _EFFORT_WORK_S = 30.0
 _MOST_SURVIVORS = 20_000
 _FIRST_STEP = 4
@@ -74,9 +78,13 @@ class Stages:
             return ObjectiveResult(name=name, value=value, bound=value, is_proven=True, proved_by="arithmetic")
         task = _PeakTask(self, rows)
         task.begin()
-        bound, proved_by = task.search()
-        if not proved_by and not self.clock.is_stopped:
-            bound, proved_by = task.decide()
+        bound, proved_by = 0.0, ""
+        for search_work, decision_work_s in _ROUNDS:
+            bound, proved_by = task.search(search_work)
+            if not proved_by and not self.clock.is_stopped:
+                bound, proved_by = task.decide(decision_work_s)
+            if self.clock.is_stopped or task.value - bound <= self.tolerance_a + _ROUNDING_A:
+                break
         self.answer = task.answer
         is_proven = task.value - bound <= self.tolerance_a + _ROUNDING_A
         return ObjectiveResult(
@@ -238,9 +246,9 @@ class _PeakTask:
     def _seated(self, answer: Answer) -> bool:
         return self.stages.seating(answer) is not None
 
-    def search(self) -> tuple[float, str]:
+    def search(self, work: float) -> tuple[float, str]:
         """Search exactly within a budget; gives the bound and what proved it."""
-        budget = Budget(_SEARCH_WORK, lambda: self.stages.clock.is_stopped)
+        budget = Budget(work, lambda: self.stages.clock.is_stopped)
 
         def accept(answer: Answer) -> float | None:
             budget.work -= _SEAT_CHECK_WORK
@@ -251,9 +259,9 @@ class _PeakTask:
         if found.answer is not None:
             self.answer, self.value = found.answer, found.value
         self.stages.report(self.rows.name, self.value, 0.0)
-        return (max(0.0, self.value - STEP_A), "search") if self.stages.is_exhaustive(found) else (0.0, "")
+        return (max(0.0, self.value - search.step_a), "search") if self.stages.is_exhaustive(found) else (0.0, "")
 
-    def decide(self) -> tuple[float, str]:
+    def decide(self, work_s: float) -> tuple[float, str]:
         """Ask the solver whether anything is below a level, and close in from both sides."""
         tolerance = self.stages.tolerance_a
         bound, step, with_seats = 0.0, _FIRST_STEP * tolerance, False
@@ -261,7 +269,7 @@ class _PeakTask:
             step = max(tolerance, min(step, (self.value - bound) / 2.0))
             level = self.value - step
             is_leap = step > tolerance + _ROUNDING_A
-            decision = self._below(level, with_seats, _LEAP_WORK_S if is_leap else _DECISION_WORK_S)
+            decision = self._below(level, with_seats, _LEAP_WORK_S if is_leap else work_s)
             if decision is None:
                 if not is_leap:
                     break
