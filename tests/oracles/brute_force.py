@@ -19,6 +19,9 @@ from balancer.arrange.results import ObjectiveName, Options
 from balancer.electrical.scenarios import ScenarioKind, Scenarios
 from balancer.panel import Circuit, Installation, Landing, Leg, Panel, Pole, Role, SupplySystem, Terminal, Volts
 
+SPARE_MOVED = 0.001
+"""A spare breaker has no conductor to land, yet it is not moved for nothing."""
+
 _BLOCK = 1 << 13
 
 Placing = dict[str, Landing]
@@ -28,7 +31,7 @@ Signs = tuple[int, ...]
 
 @dataclass(frozen=True)
 class Cost:
-    """What an arrangement takes: spares given up, effort in landings; in this order."""
+    """What an arrangement takes: spares given up, then effort in landings, where a spare moved counts for a hair."""
 
     removed: int
     effort: float
@@ -146,9 +149,24 @@ def _placings(installation: Installation, options: Options, unit: list[Circuit])
     """Every allowed place of a unit; the empty one where a spare may be left out."""
     allowed: list[Placing] = []
     for placing in _candidates(installation, options, unit):
-        if placing not in allowed and all(_may_go(installation, options, c, placing[c.label]) for c in unit):
+        is_allowed = all(_may_go(installation, options, circuit, placing[circuit.label]) for circuit in unit)
+        if is_allowed and placing not in allowed and _keeps_pairs(installation, unit, placing):
             allowed.append(placing)
     return [*allowed, {}] if all(circuit.role is Role.SPARE for circuit in unit) else allowed
+
+
+def _keeps_pairs(installation: Installation, unit: list[Circuit], placing: Placing) -> bool:
+    """A shared neutral's breakers one below the other on opposite legs, but for what stays as it was found."""
+    panel = installation.panel
+    is_in_phase = panel.supply.system is SupplySystem.IN_PHASE
+    for one, other in itertools.combinations(unit, 2):
+        if _is_pair(one, other) and (placing[one.label], placing[other.label]) != (one.landing, other.landing):
+            here, there = (panel.by_number[placing[c.label][0].space] for c in (one, other))
+            if here.column != there.column or abs(here.row - there.row) != 1:
+                return False
+            if here.leg is there.leg and not is_in_phase:
+                return False
+    return True
 
 
 def _candidates(installation: Installation, options: Options, unit: list[Circuit]) -> Iterator[Placing]:
@@ -217,6 +235,9 @@ def _stacked(panel: Panel, unit: list[Circuit]) -> Iterator[Placing]:
     for column in sorted({space.column for space in panel.spaces}):
         numbers = [s.number for s in sorted(panel.spaces, key=lambda s: s.row) if s.column == column]
         for order in itertools.permutations(unit):
+            places = [index for index, circuit in enumerate(order) if circuit.tied]
+            if places and places[-1] - places[0] >= len(places):
+                continue  # a handle tie reaches the next breaker
             poles = [circuit.poles for circuit in order]
             for start in range(len(numbers) - sum(poles) + 1):
                 offsets = list(itertools.accumulate([start, *poles]))
@@ -319,7 +340,10 @@ def _cost(installation: Installation, unit: list[Placing], placing: Placing) -> 
     landings, effort = 0, 0.0
     for label, landing in placing.items():
         circuit = installation.by_label[label]
-        if circuit.role is Role.SPARE or not circuit.landing:
+        if circuit.role is Role.SPARE:
+            effort += SPARE_MOVED if circuit.landing and landing != circuit.landing else 0.0
+            continue
+        if not circuit.landing:
             continue
         moved = sum(old != new for old, new in zip(circuit.landing, landing, strict=True))
         landings += moved

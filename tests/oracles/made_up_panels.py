@@ -86,7 +86,7 @@ class Wall:
     def fill(self, space: int, taken: set[int]) -> None:
         kind = str(self.rng.choice(KINDS))
         below = space + 2
-        has_room_below = below <= len(self.panel.spaces) and below not in taken
+        has_room_below = (space, below) in self.panel.two_pole_seats and below not in taken
         if kind in ("two-pole", "range") and has_room_below:
             self.two_pole(kind, space, below)
         elif kind == "pair" and has_room_below and not any(c.shared_neutral for c in self.circuits):
@@ -103,15 +103,20 @@ class Wall:
 
     def add_new(self) -> None:
         """One or two units that are not landed yet."""
-        kind = str(self.rng.choice(["single", "single", "two-pole", "range", "pair", "tied"]))
+        kind = str(self.rng.choice(["single", "single", "two-pole", "range", "pair", "tied", "trio"]))
+        name = f"new{len(self.circuits)}"
         if kind in ("two-pole", "range"):
             self.two_pole(kind)
         elif kind == "pair":
-            self.add(shared_neutral="n2")
-            self.add(shared_neutral="n2")
+            self.add(shared_neutral=name)
+            self.add(shared_neutral=name)
+        elif kind == "trio":
+            self.add(shared_neutral=name)
+            self.add(shared_neutral=name, tied=name)
+            self.add(tied=name)
         elif kind == "tied":
-            self.add(tied="t1")
-            self.add(tied="t1")
+            self.add(tied=name)
+            self.add(tied=name)
         else:
             self.add()
 
@@ -153,7 +158,7 @@ def small_installation(seed: int) -> Installation:
     rng = np.random.default_rng(seed)
     draw = rng.random(8)
     panel = Panel(
-        spaces=ordinary_spaces(8, "AB" if draw[0] < 0.7 else "BA"),
+        spaces=ordinary_spaces(8, "AB" if draw[0] < 0.6 else "BA" if draw[0] < 0.85 else "AABB"),
         supply=SUPPLIES[rng.integers(len(SUPPLIES))],
         tandem_spaces=frozenset({5, 6, 7, 8}) if draw[1] < 0.3 else None,
         reserved=frozenset({8}) if draw[2] < 0.2 else frozenset(),
