@@ -270,7 +270,7 @@ class LegSearch:
         level = self._level(depth)
         columns = [c for group in self._order[:depth] for c in group]
         precision = level.effects.dtype
-        if not level.is_tuned and len(block) >= _TUNED_FROM:
+        if not level.is_tuned and len(level.limit) and len(block) >= _TUNED_FROM:
             level.tune(block[:: len(block) // _SAMPLE][:, columns].astype(precision))
         start, size = 0, _FIRST_ROWS
         while start < len(level.limit) and len(block):

@@ -192,8 +192,8 @@ def _confined(proposal: Proposal) -> frozenset[str]:
 def _is_choosy(proposal: Proposal, circuit: Circuit) -> bool:
     """Whether a conductor's length or the make of the breaker leaves it few places."""
     is_short = circuit.slack_in is not None and math.isfinite(circuit.slack_in) and not proposal.options.splice
-    is_special = any(terminal.half for terminal in circuit.landing) or bool(proposal.panel.bolt_on) or bool(circuit.tied)
-    return is_short or is_special or _needs_neutral_bar(proposal, circuit)
+    is_special = any(terminal.half for terminal in circuit.landing) or bool(proposal.panel.bolt_on)
+    return is_short or is_special or bool(circuit.tied) or _needs_neutral_bar(proposal, circuit)
 
 
 def _too_many_landings(proposal: Proposal) -> Iterator[str]:

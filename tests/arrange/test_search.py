@@ -140,3 +140,11 @@ def test_projection_of_unity_power_factor_is_exact() -> None:
     rows = problem_of(3, factors=(1.0,)).neutral
     offset, _ = project(rows)
     assert offset.shape == rows.offset.shape
+
+
+def test_limits_that_rule_nothing_out_leave_every_answer() -> None:
+    problem = problem_of(0, free=14)
+    caps = [Cap(problem.neutral, 1e6)]
+    survivors = LegSearch(problem, caps, (), Budget(1e12), problem.neutral.peak).survivors(100_000)
+    assert survivors is not None
+    assert len(survivors) == 2 ** len(problem.choices)
