@@ -228,8 +228,10 @@ class _PeakTask:
         self.value = self.rows.peak(self.answer)
 
     def begin(self) -> None:
-        """Improve on the present answer by annealing and descent."""
+        """Improve on the present answer by descent and annealing."""
         stages = self.stages
+        # Seated before annealing takes its time: once the clock has stopped, no answer finds seats any more.
+        self._improve([self.answer])
         heuristic = self._heuristic()
         for answer in heuristic.first_answers(stages.clock):
             value = self.rows.peak(answer)
