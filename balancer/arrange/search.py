@@ -41,7 +41,7 @@ _SAMPLE = 512
 _TUNED_FROM = 2048
 """Partial answers in a block from which it pays to try on a sample which rows kill most."""
 
-_ROW_OVERHEAD = 20
+_ROW_OVERHEAD = 30
 """What comparing a sum costs beside adding one column to it."""
 
 _EXPLODED = 1 << 18
@@ -102,31 +102,33 @@ class _Limits:
 
 @dataclass(eq=False)
 class _Level:
-    """Rows that can kill partial answers of one depth while the best value is `best`."""
+    """Rows that can kill partial answers of one depth while the best value is `best`.
+
+    Every row is divided by its limit, so that what exceeds 1 dies.
+    """
 
     best: float
     offset: FloatMatrix
+    """Shape (rows, 1)."""
     effects: FloatMatrix
-    """Shape (settled choices, rows)."""
-    limit: FloatMatrix
+    """Shape (rows, settled choices)."""
     is_tuned: bool = False
 
     def tune(self, sample: FloatMatrix) -> None:
-        """Put those rows first that together kill most of a sample of partial answers."""
-        kills = np.abs(sample @ self.effects + self.offset) > self.limit
-        alive = np.ones(len(kills), dtype=bool)
+        """Put those rows first that together kill most of a sample of partial answers (settled choices, answers)."""
+        kills = np.abs(self.effects @ sample + self.offset) > 1.0
+        alive = np.ones(kills.shape[1], dtype=bool)
         first: list[int] = []
-        while len(first) < 2 * _FIRST_ROWS:
-            counts = kills[alive].sum(axis=0)
+        while len(first) < 2 * _FIRST_ROWS and alive.any():
+            counts = kills[:, alive].sum(axis=1)
             row = int(counts.argmax())
             if counts[row] == 0:
                 break
             first.append(row)
-            alive &= ~kills[:, row]
-        rest = np.argsort(-kills.sum(axis=0), kind="stable")
+            alive &= ~kills[row]
+        rest = np.argsort(-kills.sum(axis=1), kind="stable")
         order = np.concatenate([np.array(first, dtype=int), rest[~np.isin(rest, first)]])
-        self.offset, self.limit = self.offset[order], self.limit[order]
-        self.effects = np.ascontiguousarray(self.effects[:, order])
+        self.offset, self.effects = self.offset[order], np.ascontiguousarray(self.effects[order])
         self.is_tuned = True
 
 
@@ -160,6 +162,8 @@ class LegSearch:
     _best: float = math.inf
     _answer: Answer | None = None
     _order: list[tuple[int, ...]] = field(default_factory=list)
+    _columns: list[int] = field(default_factory=list)
+    """Choices in the order in which they are settled: what the rows of a block of partial answers stand for."""
     _levels: dict[int, _Level] = field(default_factory=dict)
     _is_mirrored: bool = False
 
@@ -173,11 +177,11 @@ class LegSearch:
         return _COARSE_STEP_A if self._is_coarse else STEP_A
 
     def _margin_a(self) -> float:
-        """Bound the rounding [A] that a sum may carry: terms times unit roundoff times size."""
+        """Bound the rounding [A] that a sum may carry: terms, one division each, times unit roundoff times size."""
         if not self._is_coarse:
             return _MARGIN_A
         size = float((np.abs(self._rows.offset) + np.abs(self._rows.effects).sum(axis=1)).max(initial=0.0))
-        return (len(self.problem.choices) + 2) * float(np.finfo(np.float32).eps) / 2.0 * size
+        return (len(self.problem.choices) + 4) * float(np.finfo(np.float32).eps) / 2.0 * size
 
     def minimise_peak(self, objective: Rows, start: Answer | None, value: float) -> Found:
         """Lowest peak of a quantity; `start` is an accepted answer to beat, of that value [A]."""
@@ -208,23 +212,29 @@ class LegSearch:
     def _descend(self, take: Callable[[NDArray[np.int8]], bool]) -> bool:
         """Search; `take` gets blocks of complete answers that keep every limit. True when nothing was left."""
         self._prepare()
-        stack = [np.zeros((1, len(self.problem.choices)), dtype=np.int8)]
+        if self._objective is not None and self._best < self.step_a:
+            return True
         # Of an answer and its mirror image one is enough: the first unit stays on its reference leg.
-        depths = [1 if self._is_mirrored else 0]
+        depth = 1 if self._is_mirrored else 0
+        stack = [(depth, np.zeros((depth, 1), dtype=np.int8))]
         while stack:
             if self.budget.is_spent:
                 return False
-            block, depth = stack.pop(), depths.pop()
+            depth, block = stack.pop()
             if depth == len(self._order):
-                block = self._keep_caps(block)
-                if len(block) and not take(block):
+                answers = self._keep_caps(self._answers(block))
+                if len(answers) and not take(answers):
                     return False
                 continue
             block = self._prune(self._branch(block, depth), depth + 1)
-            for start in range(0, len(block), _BLOCK):
-                stack.append(block[start : start + _BLOCK])
-                depths.append(depth + 1)
+            stack += [(depth + 1, block[:, start : start + _BLOCK]) for start in range(0, block.shape[1], _BLOCK)]
         return True
+
+    def _answers(self, block: NDArray[np.int8]) -> NDArray[np.int8]:
+        """Turn a block of complete answers (settled choices, answers) into answers, one a row."""
+        answers = np.zeros((block.shape[1], len(self._columns)), dtype=np.int8)
+        answers[:, self._columns] = block.T
+        return answers
 
     def _prepare(self) -> None:
         parts = [(*project(cap.rows), cap.limit_a, False) for cap in self.caps if not cap.rows.is_constant]
@@ -243,6 +253,7 @@ class LegSearch:
         weights = self._weights()
         self._sequence = sorted(range(len(self.problem.groups)), key=lambda g: (-weights[g], g))
         self._order = [self.problem.groups[g] for g in self._sequence]
+        self._columns = [choice for group in self._order for choice in group]
 
     def _relevant(self, rows: _Limits) -> _Limits:
         """Leave out the capped rows that no answer can break; the objective's limit falls, so all its rows stay."""
@@ -258,39 +269,40 @@ class LegSearch:
         return np.asarray(self._half @ (excess * excess))
 
     def _branch(self, block: NDArray[np.int8], depth: int) -> NDArray[np.int8]:
-        branches = [block]
-        for choice in self._order[depth]:
-            taken = block.copy()
-            taken[:, choice] = 1
-            branches.append(taken)
-        return np.concatenate(branches)
+        count, width = len(self._order[depth]), block.shape[1]
+        settled = np.zeros((count, (count + 1) * width), dtype=np.int8)
+        for choice in range(count):
+            settled[choice, (choice + 1) * width : (choice + 2) * width] = 1
+        return np.concatenate([np.tile(block, (1, count + 1)), settled])
 
     def _prune(self, block: NDArray[np.int8], depth: int) -> NDArray[np.int8]:
-        block = block[self._counters_kept(block, depth)]
+        block = block[:, self._counters_kept(block, depth)]
         level = self._level(depth)
-        columns = [c for group in self._order[:depth] for c in group]
-        precision = level.effects.dtype
-        if not level.is_tuned and len(level.limit) and len(block) >= _TUNED_FROM:
-            level.tune(block[:: len(block) // _SAMPLE][:, columns].astype(precision))
+        taken = block.astype(level.effects.dtype)
+        if not level.is_tuned and len(level.offset) and block.shape[1] >= _TUNED_FROM:
+            level.tune(taken[:, :: block.shape[1] // _SAMPLE])
         start, size = 0, _FIRST_ROWS
-        while start < len(level.limit) and len(block):
-            end = min(start + size, len(level.limit))
-            values = block[:, columns].astype(precision) @ level.effects[:, start:end]
+        while start < len(level.offset) and block.shape[1]:
+            end = min(start + size, len(level.offset))
+            values = level.effects[start:end] @ taken
             values += level.offset[start:end]
-            np.abs(values, out=values)
-            self.budget.work -= len(block) * (end - start) * (len(columns) + _ROW_OVERHEAD)
-            block = block[(values <= level.limit[start:end]).all(axis=1)]
+            self.budget.work -= values.size * (len(block) + _ROW_OVERHEAD)
+            keep = np.abs(values, out=values).max(axis=0) <= 1.0
+            block, taken = block[:, keep], taken[:, keep]
             start, size = end, min(512, size * 2)
         return block
 
     def _counters_kept(self, block: NDArray[np.int8], depth: int) -> NDArray[np.bool_]:
-        keep = np.ones(len(block), dtype=bool)
+        keep = np.ones(block.shape[1], dtype=bool)
         limits = [(counter, counter.cap) for counter in self.counters]
         if self._counted is not None and self._best < math.inf:
             limits.append((self._counted, math.ceil(self._best) - 1))
         for counter, cap in limits:
+            costs = counter.costs[self._columns[: len(block)]]
             least = sum(min(0, *(int(counter.costs[c]) for c in g)) for g in self._order[depth:])
-            keep &= block.astype(np.int64) @ counter.costs + (counter.base + least) <= cap
+            if counter.base + least + int(np.maximum(costs, 0).sum()) > cap:
+                # Whole numbers this small are exact in double precision, and only floats are multiplied fast.
+                keep &= costs.astype(float) @ block.astype(float) + (counter.base + least) <= cap
         return keep
 
     def _level(self, depth: int) -> _Level:
@@ -305,12 +317,11 @@ class LegSearch:
         tightness = reach - limit
         rows = np.nonzero(tightness > 0)[0]
         rows = rows[np.argsort(-tightness[rows] / np.maximum(reach[rows], STEP_A), kind="stable")]
-        columns = [c for group in self._order[:depth] for c in group]
-        precision = np.float32 if self._is_coarse else np.float64
-        effects = np.ascontiguousarray(self._rows.effects[rows][:, columns].T.astype(precision))
-        self._levels[depth] = _Level(
-            self._best, offset[rows].astype(precision), effects, np.nextafter(limit[rows].astype(precision), np.inf)
-        )
+        columns = [choice for group in self._order[:depth] for choice in group]
+        precision = np.dtype(np.float32 if self._is_coarse else np.float64)
+        scale = 1.0 / limit[rows, None]
+        effects = np.ascontiguousarray(self._rows.effects[rows][:, columns] * scale, dtype=precision)
+        self._levels[depth] = _Level(self._best, np.asarray(offset[rows, None] * scale, dtype=precision), effects)
         return self._levels[depth]
 
     def _keep_caps(self, block: NDArray[np.int8]) -> NDArray[np.int8]:
