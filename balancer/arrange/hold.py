@@ -8,9 +8,11 @@ from enum import StrEnum
 
 import numpy as np
 
+from balancer.arrange.grouping import shared_neutral_pairs
 from balancer.arrange.moment import Moment, neutral_of_leg
+from balancer.arrange.placements import Unit
 from balancer.arrange.results import Options
-from balancer.arrange.seats import Unit, build_units, shared_neutral_pairs
+from balancer.arrange.seats import build_units
 from balancer.electrical.phasors import Case, ComplexArray, neutral_leg
 from balancer.electrical.scenarios import FloatArray
 from balancer.panel import Arrangement, Circuit, Leg, SupplySystem

@@ -15,8 +15,8 @@ from functools import cached_property
 import numpy as np
 from numpy.typing import NDArray
 
+from balancer.arrange.placements import Placement, Unit
 from balancer.arrange.results import ObjectiveName
-from balancer.arrange.seats import Placement, Unit
 from balancer.electrical.phasors import PanelCurrents
 from balancer.electrical.scenarios import Scenarios
 from balancer.panel import Installation, Leg, Panel, SupplySystem

@@ -12,10 +12,11 @@ from balancer.arrange.conflict import explain_no_seats
 from balancer.arrange.incumbent import Heuristic
 from balancer.arrange.leg_model import LegModel
 from balancer.arrange.legs import Answer, Counter, build_leg_problem
+from balancer.arrange.placements import landing_effort
 from balancer.arrange.results import Aim, ObjectiveName, ObjectiveResult, Options, Plan, ProgressListener
 from balancer.arrange.search import Cap
 from balancer.arrange.seating import Seater, Seating
-from balancer.arrange.seats import build_units, landing_effort
+from balancer.arrange.seats import build_units
 from balancer.arrange.solve import SolveStatus
 from balancer.arrange.stages import READINGS_TOLERANCE_A, SCENARIO_TOLERANCE_A, Stages
 from balancer.arrange.verify import verify_plan
@@ -93,7 +94,7 @@ class Planner:
 
     def __post_init__(self) -> None:
         self._currents = PanelCurrents(self.installation, self.scenarios)
-        units = build_units(self.installation, self.options)
+        units = build_units(self.installation, self.options, idle=self._idle())
         if any(not unit.placements and not unit.is_optional for unit in units):
             raise explain_no_seats(self.installation, self.options, self.clock)
         units = tuple(unit for unit in units if unit.placements)
@@ -101,6 +102,11 @@ class Planner:
         self._seater = Seater(self.installation.panel, units, self.options.max_landings, self.clock)
         self._counters = self._all_counters()
         self._caps, self._notes = self._leg_limit()
+
+    def _idle(self) -> frozenset[str]:
+        """Labels of circuits without line-to-neutral current in any scenario."""
+        carrying = np.any(self.scenarios.neutral_a != 0.0, axis=0)
+        return frozenset(c.label for c, on in zip(self.installation.circuits, carrying, strict=True) if not on)
 
     def _all_counters(self) -> list[Counter]:
         counters = list(self.problem.counters)

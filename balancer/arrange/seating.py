@@ -9,7 +9,7 @@ from functools import cached_property
 from ortools.sat.python import cp_model
 
 from balancer.arrange.clock import Clock
-from balancer.arrange.seats import Part, Placement, Unit, removal_effort
+from balancer.arrange.placements import SPARE_REMOVAL_EFFORT, Part, Placement, Unit
 from balancer.arrange.solve import SolveStatus, solve
 from balancer.panel import Arrangement, Panel
 
@@ -33,7 +33,13 @@ class Seating:
     @property
     def effort(self) -> int:
         """Effort in thousandths of a landing, with what moving and taking out spares costs."""
-        return sum(removal_effort() if p is None else p.effort for p in self.placements)
+        return sum(SPARE_REMOVAL_EFFORT if p is None else p.effort for p in self.placements)
+
+    @property
+    def spares_effort(self) -> int:
+        """What of the effort is for moving and taking out spares, in thousandths of a landing."""
+        spares = [p for u, p in zip(self.units, self.placements, strict=True) if u.is_optional]
+        return sum(SPARE_REMOVAL_EFFORT if p is None else p.effort for p in spares)
 
     @property
     def landings_changed(self) -> int:
@@ -53,7 +59,7 @@ class Seating:
 
 
 def row_limits_a(stab_a: float | None, units: Sequence[Unit]) -> dict[int, float]:
-    """Limit of the handle ratings [A] in every row: `stab_a`, or what no placement keeps out of there; none without.
+    """Limit of the handle ratings [A] in every row: `stab_a`, or what is there as found and cannot leave; none without.
 
     All placements of the units count, whichever legs are chosen later.
     """
@@ -63,7 +69,8 @@ def row_limits_a(stab_a: float | None, units: Sequence[Unit]) -> dict[int, float
     for unit in units:
         ratings = [dict(placement.row_rating_a) for placement in unit.placements]
         for row in sorted({row for rating in ratings for row in rating}):
-            stuck = 0.0 if unit.is_optional else min(rating.get(row, 0.0) for rating in ratings)
+            found = dict(unit.as_found.row_rating_a).get(row, 0.0) if unit.as_found else 0.0
+            stuck = 0.0 if unit.is_optional else min(found, *(rating.get(row, 0.0) for rating in ratings))
             limits[row] = limits.get(row, 0.0) + stuck
     return {row: max(stab_a, stuck) for row, stuck in limits.items()}
 
@@ -116,8 +123,8 @@ class SeatModel:
     def effort(self) -> cp_model.LinearExpr:
         """Effort of the seating in thousandths of a landing."""
         terms = self._pairs()
-        optional = sum(removal_effort() for unit in self.units if unit.is_optional)
-        costs = [p.effort - (removal_effort() if unit.is_optional else 0) for unit, p, _ in terms]
+        optional = sum(SPARE_REMOVAL_EFFORT for unit in self.units if unit.is_optional)
+        costs = [p.effort - (SPARE_REMOVAL_EFFORT if unit.is_optional else 0) for unit, p, _ in terms]
         total = cp_model.LinearExpr.weighted_sum([seat for _, _, seat in terms], costs)
         return cp_model.LinearExpr.affine(total, 1, optional)
 

@@ -12,10 +12,10 @@ from balancer.arrange.clock import Clock
 from balancer.arrange.incumbent import Heuristic
 from balancer.arrange.leg_model import LegModel
 from balancer.arrange.legs import Answer, Counter, LegProblem, Rows, mirror_choice
+from balancer.arrange.placements import EFFORT_SCALE
 from balancer.arrange.results import ObjectiveName, ObjectiveResult, Progress, ProgressListener
 from balancer.arrange.search import STEP_A, Budget, Cap, Found, LegSearch
 from balancer.arrange.seating import Seater, Seating
-from balancer.arrange.seats import EFFORT_SCALE
 from balancer.arrange.solve import SolveStatus
 
 SCENARIO_TOLERANCE_A = 0.05
@@ -66,9 +66,13 @@ class Stages:
     @property
     def effort(self) -> int:
         """Effort of the best answer's seats, in thousandths of a landing."""
+        return self._best_seating.effort
+
+    @property
+    def _best_seating(self) -> Seating:
         seating = self.seating(self.answer)
         assert seating is not None, "the best answer always has seats"
-        return seating.effort
+        return seating
 
     def close_peak(self, name: ObjectiveName) -> ObjectiveResult:
         """Lower the peak of a quantity as far as possible and prove how far that is."""
@@ -117,10 +121,12 @@ class Stages:
             value = self.effort
         is_proven = bound >= value
         self.counters.append(_capped(self.problem.effort, value))
+        # What spares cost only decides among equals: it is no landing.
+        spares = self._best_seating.spares_effort
         return ObjectiveResult(
             name=ObjectiveName.EFFORT,
-            value=value / EFFORT_SCALE,
-            bound=min(value, bound) / EFFORT_SCALE,
+            value=(value - spares) / EFFORT_SCALE,
+            bound=max(0, min(value, bound) - spares) / EFFORT_SCALE,
             is_proven=is_proven,
             proved_by=proved_by if is_proven else "",
         )

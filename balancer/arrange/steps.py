@@ -9,7 +9,7 @@ from functools import cached_property
 from balancer.arrange.breakers import BreakerPlan, Source, breaker_bodies, needed_rating_a, plan_breakers
 from balancer.arrange.order import Item, Operation, order_moves
 from balancer.arrange.parts import list_parts
-from balancer.arrange.seats import longest_reach_in
+from balancer.arrange.placements import longest_reach_in
 from balancer.arrange.step_words import Lifted, action_text, along_texts, splice_text
 from balancer.arrange.work import How, PreMoveTest, Splice, Step, Work
 from balancer.panel import Arrangement, Circuit, Installation, Landing, Role, Volts, format_landing

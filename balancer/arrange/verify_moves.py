@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import math
 from collections.abc import Iterator, Sequence
 
 from balancer.arrange.proposal import Pair, Proposal, stays_put
@@ -157,19 +156,22 @@ def _out_of_reach(proposal: Proposal) -> Iterator[str]:
 
 
 def _stabs_overloaded(proposal: Proposal) -> Iterator[str]:
-    """Keep rows to the stab limit; one above it holds nothing but what was there before and may be unable to leave."""
+    """Keep rows to the stab limit; one that was above it may not hold more than it did as found."""
     limit_a = proposal.panel.stab_a
     if limit_a is None:
         return
-    confined = _confined(proposal)
+    found = Proposal(proposal.installation, proposal.options, proposal.installation.as_found)
+    before = {row: _handle_sum_a(handles) for row, handles in _handles_by_row(found).items()}
     for row, handles in _handles_by_row(proposal).items():
-        # Two circuits under one breaker have one handle.
-        total_a = sum(max(circuit.breaker_a or 0.0 for circuit in circuits) for circuits in handles)
-        rated = [circuit for circuits in handles for circuit in circuits if circuit.breaker_a]
-        free = [c for c in rated if c.label not in confined or not _is_as_found(proposal, c)]
-        if total_a > limit_a and free:
-            names = _names(proposal, free)
+        total_a = _handle_sum_a(handles)
+        if total_a > max(limit_a, before.get(row, 0.0)):
+            names = _names(proposal, [circuit for circuits in handles for circuit in circuits if circuit.breaker_a])
             yield f"row {row}: handle ratings of {total_a:g} A where stab_a allows {limit_a:g} A, with {names} there"
+
+
+def _handle_sum_a(handles: Sequence[tuple[Circuit, ...]]) -> float:
+    # Two circuits under one breaker have one handle.
+    return sum(max(circuit.breaker_a or 0.0 for circuit in circuits) for circuits in handles)
 
 
 def _handles_by_row(proposal: Proposal) -> dict[int, list[tuple[Circuit, ...]]]:
@@ -177,23 +179,6 @@ def _handles_by_row(proposal: Proposal) -> dict[int, list[tuple[Circuit, ...]]]:
     for terminal, circuits in proposal.by_terminal.items():
         rows.setdefault(proposal.panel.by_number[terminal.space].row, []).append(circuits)
     return rows
-
-
-def _confined(proposal: Proposal) -> frozenset[str]:
-    """Labels of what might have no other place; whether it has none would take a search."""
-    confined = [
-        circuit
-        for circuit in proposal.installation.circuits
-        if circuit.label in proposal.immovable or _is_choosy(proposal, circuit)
-    ]
-    return proposal.hanging_on(confined)
-
-
-def _is_choosy(proposal: Proposal, circuit: Circuit) -> bool:
-    """Whether a conductor's length or the make of the breaker leaves it few places."""
-    is_short = circuit.slack_in is not None and math.isfinite(circuit.slack_in) and not proposal.options.splice
-    is_special = any(terminal.half for terminal in circuit.landing) or bool(proposal.panel.bolt_on)
-    return is_short or is_special or bool(circuit.tied) or _needs_neutral_bar(proposal, circuit)
 
 
 def _too_many_landings(proposal: Proposal) -> Iterator[str]:

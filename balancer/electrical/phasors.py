@@ -7,6 +7,7 @@ of one power factor add and subtract like plain numbers. See `supply.SupplyFacto
 from __future__ import annotations
 
 import cmath
+import itertools
 import math
 from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
@@ -19,6 +20,9 @@ from balancer.electrical.supply import SupplyFactors, supply_factors
 from balancer.panel import Circuit, Installation, Landing, Leg, Panel, Pole
 
 ComplexArray = NDArray[np.complexfloating]
+
+MOST_UNKNOWN = 6
+"""Parts of unknown pole up to which every combination is looked at, for the difference of the legs."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -103,11 +107,12 @@ class PanelCurrents:
         """Leg-to-leg phasors [A] of every circuit at its own power factor, (scenarios, circuits)."""
         return np.asarray(self.scenarios.line_a * self._line_unit)
 
-    def cases(self, arrangement: Mapping[str, Landing]) -> Iterator[Case]:
+    def cases(self, arrangement: Mapping[str, Landing], *, only_extreme: bool = True) -> Iterator[Case]:
         """Give S and D for every combination of what is not known.
 
         The 120 V parts whose pole is not known have unity power factor and stay in S wherever they flow. Leg and
         neutral magnitudes are convex in how much of them flows on leg A, so all on A and all on B are the worst cases.
+        The difference of the legs is not: `only_extreme` False gives every combination of up to `MOST_UNKNOWN` parts.
         """
         circuits, panel = self.installation.circuits, self.installation.panel
         landed = np.array([bool(arrangement.get(c.label)) for c in circuits], dtype=bool)
@@ -118,20 +123,27 @@ class PanelCurrents:
         sum_neutral = _phasor_sum(neutral, self._neutral_unit * landed)
         difference = _phasor_sum(neutral, self._neutral_unit * sign)
         line_sum = _phasor_sum(line, self._line_unit * landed)
-        shift = neutral @ unknown.astype(neutral.dtype)
         for factors in supply_factors(panel.supply):
             total = sum_neutral + (factors.line_a + factors.line_b) * line_sum
             base = difference + (factors.line_a - factors.line_b) * line_sum
-            if not shift.any():
-                yield Case(factors, total, base)
-                continue
-            yield Case(factors, total, base + shift)
-            yield Case(factors, total, base - shift)
+            for shift in self._shifts(unknown, only_extreme=only_extreme):
+                yield Case(factors, total, np.asarray(base + shift, dtype=base.dtype))
+
+    def _shifts(self, unknown: NDArray[np.bool_], *, only_extreme: bool) -> list[FloatArray]:
+        """List what parts of unknown pole add to D, in every combination or with all on one leg."""
+        parts = [self.scenarios.neutral_a[:, c] for c in np.nonzero(unknown)[0] if self.scenarios.neutral_a[:, c].any()]
+        if not parts:
+            return [np.zeros(len(self.scenarios))]
+        if only_extreme or len(parts) > MOST_UNKNOWN:
+            together = np.sum(parts, axis=0)
+            return [together, -together]
+        signs = itertools.product((1.0, -1.0), repeat=len(parts))
+        return [np.sum([sign * part for sign, part in zip(each, parts, strict=True)], axis=0) for each in signs]
 
     def currents(self, arrangement: Mapping[str, Landing]) -> LegCurrents:
         """Clamp-meter readings of an arrangement in every scenario."""
         worst: dict[str, FloatArray] = {}
-        for case in self.cases(arrangement):
+        for case in self.cases(arrangement, only_extreme=False):
             leg_a = np.abs(case.sum_phasor_a + case.difference_phasor_a) / 2.0
             leg_b = np.abs(case.sum_phasor_a - case.difference_phasor_a) / 2.0
             readings = {

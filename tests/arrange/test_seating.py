@@ -6,9 +6,10 @@ import pytest
 from ortools.sat.python import cp_model
 
 from balancer.arrange.clock import Clock
+from balancer.arrange.placements import SPARE_REMOVAL_EFFORT
 from balancer.arrange.results import Options
 from balancer.arrange.seating import Seater, SeatModel, row_limits_a
-from balancer.arrange.seats import build_units, removal_effort
+from balancer.arrange.seats import build_units
 from balancer.panel import Circuit, Installation, Role, format_landing
 
 Build = Callable[..., Installation]
@@ -62,7 +63,7 @@ def test_spare_comes_out_only_where_a_circuit_needs_its_space(installation: Buil
     full = installation(circuit("a", "1"), spare, circuit("b", "2"), circuit("c", "4"), circuit("new"), spaces=4)
     seating = seater_of(full).least_effort(((1,), (1,), (0,), (-1,), (-1,)))
     assert seating is not None
-    assert (seating.removed, seating.effort) == (("s",), removal_effort())
+    assert (seating.removed, seating.effort) == (("s",), SPARE_REMOVAL_EFFORT)
 
 
 def test_least_rating_of_a_row_is_what_no_placement_keeps_out(installation: Build, circuit: Make) -> None:

@@ -261,16 +261,13 @@ def test_a_pair_in_phase_may_be_split(judge: Judge) -> None:
 @pytest.mark.parametrize(
     ("second", "is_well"),
     [
-        (row("2", "2", breaker_a=60.0, is_fixed=True), True),
-        (row("2", "2", breaker_a=60.0, slack_in=0.0), True),
-        # It could go to another row.
-        (row("2", "2", breaker_a=60.0), False),
-        (row("2", "2", breaker_a=60.0, slack_in=float("inf")), False),
+        (row("2", "2", breaker_a=60.0), True),
+        (row("2", "4", breaker_a=60.0), True),
         (row("4", "2", breaker_a=60.0), False),
     ],
-    ids=["fixed", "short", "free", "long", "arrived"],
+    ids=["as it was", "lighter", "arrived"],
 )
-def test_a_row_above_the_stab_limit_holds_only_what_cannot_leave(judge: Judge, second: Row, is_well: bool) -> None:
+def test_a_row_above_the_stab_limit_may_not_get_heavier(judge: Judge, second: Row, is_well: bool) -> None:
     details = judge([row("1", "1", breaker_a=60.0, is_fixed=True), second], stab_a=100.0)
     assert (not any("stab_a allows 100 A" in each for each in details)) == is_well
 
@@ -283,14 +280,6 @@ def test_a_row_above_the_stab_limit_may_get_lighter(judge: Judge) -> None:
 def test_a_breaker_of_unknown_rating_adds_nothing_to_a_stab(judge: Judge) -> None:
     rows = [row("1", "1", breaker_a=110.0, is_fixed=True), row("4", "2", breaker_a=None)]
     assert judge(rows, stab_a=100.0) == []
-
-
-def test_what_hangs_on_a_breaker_that_cannot_leave_may_stay(judge: Judge) -> None:
-    rows = [row("1", "1", breaker_a=60.0, **PAIR), row("3", "3", is_fixed=True, **PAIR), row("2", "2", breaker_a=60.0)]
-    details = judge([*rows[:2], row("2", "2", breaker_a=60.0, is_fixed=True)], stab_a=100.0)
-    assert details == []
-    (detail,) = judge(rows, stab_a=100.0)
-    assert detail.endswith("with c3 (2) there")
 
 
 def test_an_error_that_strikes_fewer_circuits_than_before_is_not_new(judge: Judge) -> None:
