@@ -38,6 +38,10 @@ class Scenarios:
         What the report must say about where the figures come from.
     average_rows
         Which scenarios are averages, where some are and some are not; None otherwise.
+    times
+        Of readings: when every interval begins, shape (scenarios,), as the log's clock showed it; None otherwise.
+    interval_s
+        Of readings: length of an interval in seconds [s]; None otherwise.
     """
 
     kind: ScenarioKind
@@ -47,6 +51,8 @@ class Scenarios:
     are_averages: bool = False
     notes: tuple[str, ...] = ()
     average_rows: NDArray[np.bool_] | None = None
+    times: NDArray[np.datetime64] | None = None
+    interval_s: float | None = None
 
     def __len__(self) -> int:
         """Count the scenarios."""
@@ -60,6 +66,7 @@ class Scenarios:
             neutral_a=self.neutral_a[list(rows)],
             line_a=self.line_a[list(rows)],
             average_rows=None if self.average_rows is None else self.average_rows[list(rows)],
+            times=None if self.times is None else self.times[list(rows)],
         )
 
 
