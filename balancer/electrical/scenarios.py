@@ -58,6 +58,17 @@ class Scenarios:
         """Count the scenarios."""
         return len(self.names)
 
+    def part(self, which: slice) -> Scenarios:
+        """Keep a run of the scenarios, without copying their currents."""
+        return replace(
+            self,
+            names=self.names[which],
+            neutral_a=self.neutral_a[which],
+            line_a=self.line_a[which],
+            average_rows=None if self.average_rows is None else self.average_rows[which],
+            times=None if self.times is None else self.times[which],
+        )
+
     def subset(self, rows: Sequence[int]) -> Scenarios:
         """Keep the scenarios with these indices, in this order."""
         return replace(

@@ -1,0 +1,90 @@
+"""Which of very many scenarios can matter: the others cannot set a peak, whatever the arrangement.
+
+In a row the neutral stays within what is fixed plus what every free unit can add, and no leg can be lighter at its
+heaviest than half the sum of both. A row whose highest possible value is at or below what the peak is going to be
+cannot set it. Rows are looked at in blocks, so that a year of minutes needs no large arrays.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from balancer.arrange.legs import Answer, FloatMatrix, LegProblem, Rows, build_leg_problem
+from balancer.arrange.placements import Unit
+from balancer.electrical.scenarios import Scenarios
+from balancer.panel import Installation
+
+FEW = 4000
+"""Up to here every scenario is kept: leaving rows out would save nothing."""
+
+_BLOCK = 65_536
+_FIRST = 2000
+"""Rows of the highest reach, on which a first good arrangement is sought."""
+
+
+@dataclass(frozen=True, eq=False)
+class Reaches:
+    """Highest possible value [A] of each quantity in every scenario, over all leg answers; arrays (scenarios,).
+
+    `least_heavy_a` is what the heavy leg reaches at least, in any arrangement: half the sum of both legs.
+    """
+
+    neutral: FloatMatrix
+    heavy_leg: FloatMatrix
+    least_heavy_a: float
+
+    def matter(self, neutral_above_a: float) -> NDArray[np.intp]:
+        """Scenarios that can carry more than a level in the neutral, or set the heavy leg's peak."""
+        return np.flatnonzero((self.neutral > neutral_above_a) | (self.heavy_leg > self.least_heavy_a))
+
+    def heaviest(self) -> NDArray[np.intp]:
+        """Scenarios of the highest reach, in order of time."""
+        count = min(_FIRST, len(self.neutral))
+        return np.sort(np.argpartition(-self.neutral, count - 1)[:count])
+
+
+def blocks(installation: Installation, scenarios: Scenarios, units: tuple[Unit, ...]) -> Iterator[LegProblem]:
+    """Give the leg problem of block after block of scenarios."""
+    for start in range(0, len(scenarios), _BLOCK):
+        yield build_leg_problem(installation, scenarios.part(slice(start, start + _BLOCK)), units)
+
+
+def reaches(installation: Installation, scenarios: Scenarios, units: tuple[Unit, ...]) -> Reaches:
+    """Find the highest possible value of each quantity in every scenario."""
+    neutral, heavy, least = [], [], 0.0
+    for problem in blocks(installation, scenarios, units):
+        cases = len(problem.cases)
+        neutral.append(_highest(problem, problem.neutral, cases))
+        heavy.append(_highest(problem, problem.heavy_leg, 2 * cases))
+        least = max(least, max(float(np.abs(case.total).max(initial=0.0)) for case in problem.cases) / 2.0)
+    return Reaches(np.concatenate(neutral), np.concatenate(heavy), least)
+
+
+def _highest(problem: LegProblem, rows: Rows, copies: int) -> FloatMatrix:
+    """Middle plus half of every unit's span, the worst of the copies that a scenario has among the rows."""
+    middle = rows.offset.copy()
+    span = np.zeros(len(middle))
+    for group in problem.groups:
+        # With one choice the middle is half of it; with more, half-way to their mean is near enough.
+        centre = rows.effects[:, list(group)].mean(axis=1) / 2.0
+        middle += centre
+        reach = np.abs(rows.effects[:, list(group)] - centre[:, None]).max(axis=1)
+        span += np.maximum(reach, np.abs(centre))
+    return np.asarray((np.abs(middle) + span).reshape(copies, -1).max(axis=0))
+
+
+def mean_neutrals(
+    installation: Installation, scenarios: Scenarios, units: tuple[Unit, ...], answers: list[Answer]
+) -> FloatMatrix:
+    """Mean neutral [A] of several answers over all scenarios, each by its worst case."""
+    taken = np.array(answers, dtype=float).T
+    total = np.zeros(len(answers))
+    for problem in blocks(installation, scenarios, units):
+        rows = problem.neutral
+        values = np.abs(rows.effects @ taken + rows.offset[:, None])
+        total += values.reshape(len(problem.cases), -1, len(answers)).max(axis=0).sum(axis=0)
+    return np.asarray(total / len(scenarios))
