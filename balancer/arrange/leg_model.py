@@ -14,6 +14,9 @@ from balancer.arrange.seating import SeatModel, row_limits_a
 from balancer.arrange.solve import SolveStatus, solve
 
 _CUTS_A_ROUND = 12
+_LEAST_ROUND_S = 0.01
+"""What a round of cuts takes from the work at least: building the model counts too."""
+
 _FIRST_ROWS = 64
 _FIRST_DIRECTIONS = 16
 _UNITS_PER_A = 100_000
@@ -125,7 +128,7 @@ class LegModel:
             self._model.clear_objective()  # type: ignore[no-untyped-call]
 
     def _with_cuts(self, work_s: float, hint: Answer | None) -> Decision:
-        while True:
+        while work_s > 0:
             self._model.clear_hints()  # type: ignore[no-untyped-call]
             if hint is not None:
                 for variable, taken in zip(self._taken, hint, strict=True):
@@ -136,6 +139,8 @@ class LegModel:
             answer = np.array(solved.values, dtype=np.int8)
             if not self._cut_broken(answer):
                 return Decision(solved.status, answer, solved.bound)
+            work_s -= max(solved.work_s, _LEAST_ROUND_S)
+        return Decision(SolveStatus.UNKNOWN, None)
 
     def _cut_broken(self, answer: Answer) -> bool:
         """Cut the worst rows that an answer breaks, in the direction in which it breaks them."""

@@ -38,6 +38,8 @@ _DIRECTIONS = 6
 
 _FIRST_ROWS = 32
 _SAMPLE = 512
+_CANDIDATES = 512
+_MOST_ROWS = 1024
 _TUNED_FROM = 2048
 """Partial answers in a block from which it pays to try on a sample which rows kill most."""
 
@@ -115,19 +117,25 @@ class _Level:
     is_tuned: bool = False
 
     def tune(self, sample: FloatMatrix) -> None:
-        """Put those rows first that together kill most of a sample of partial answers (settled choices, answers)."""
+        """Put those rows first that together kill most of a sample of partial answers (settled choices, answers).
+
+        Of very many rows those that kill none of the sample are left out: an answer that only they would kill dies
+        later, at the latest when it is complete.
+        """
         kills = np.abs(self.effects @ sample + self.offset) > 1.0
-        alive = np.ones(kills.shape[1], dtype=bool)
+        counts = kills.sum(axis=1)
+        order = np.argsort(-counts, kind="stable")[: max(_MOST_ROWS, int((counts > 0).sum()))]
+        deadliest = kills[order[:_CANDIDATES]].astype(np.float32)
+        alive = np.ones(kills.shape[1], dtype=np.float32)
         first: list[int] = []
         while len(first) < 2 * _FIRST_ROWS and alive.any():
-            counts = kills[:, alive].sum(axis=1)
-            row = int(counts.argmax())
-            if counts[row] == 0:
+            gains = deadliest @ alive
+            row = int(gains.argmax())
+            if gains[row] == 0:
                 break
             first.append(row)
-            alive &= ~kills[row]
-        rest = np.argsort(-kills.sum(axis=1), kind="stable")
-        order = np.concatenate([np.array(first, dtype=int), rest[~np.isin(rest, first)]])
+            alive *= 1.0 - deadliest[row]
+        order = np.concatenate([order[first], np.delete(order, first)])
         self.offset, self.effects = self.offset[order], np.ascontiguousarray(self.effects[order])
         self.is_tuned = True
 
@@ -279,7 +287,7 @@ class LegSearch:
         block = block[:, self._counters_kept(block, depth)]
         level = self._level(depth)
         taken = block.astype(level.effects.dtype)
-        if not level.is_tuned and len(level.offset) and block.shape[1] >= _TUNED_FROM:
+        if not level.is_tuned and len(level.offset) and depth < len(self._order) and block.shape[1] >= _TUNED_FROM:
             level.tune(taken[:, :: block.shape[1] // _SAMPLE])
         start, size = 0, _FIRST_ROWS
         while start < len(level.offset) and block.shape[1]:

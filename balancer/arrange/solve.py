@@ -33,6 +33,8 @@ class Solved:
     status: SolveStatus
     values: tuple[int, ...]
     bound: float
+    work_s: float = 0.0
+    """Deterministic time [s] that the run took."""
 
 
 _STATUS = {
@@ -92,9 +94,10 @@ def solve(
         message = f"the solver calls the model invalid: {model.validate()}"
         raise ValueError(message)
     status = _STATUS[code]
+    spent_s = float(solver.response_proto.deterministic_time)
     if not status.has_answer:
-        return Solved(status, (), float("-inf"))
-    return Solved(status, tuple(solver.value(v) for v in variables), solver.best_objective_bound)
+        return Solved(status, (), float("-inf"), spent_s)
+    return Solved(status, tuple(solver.value(v) for v in variables), solver.best_objective_bound, spent_s)
 
 
 def _run_beside(solver: cp_model.CpSolver, model: cp_model.CpModel, clock: Clock) -> cp_model.CpSolverStatus:

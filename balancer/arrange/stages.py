@@ -21,7 +21,7 @@ from balancer.arrange.solve import SolveStatus
 SCENARIO_TOLERANCE_A = 0.05
 READINGS_TOLERANCE_A = 0.01
 
-_ROUNDS = ((1e11, 4.0), (1.2e12, 60.0))
+_ROUNDS = ((1e11, 4.0), (4e11, 15.0), (2e12, 60.0))
 """Search and solver take turns, at first with a few seconds each: which of them is quick differs from panel to panel.
 
 Work of the search in column additions, of one decision by the solver in its deterministic seconds.
