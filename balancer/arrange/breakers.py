@@ -167,10 +167,23 @@ class _Assignment:
             return True
         if not set(body.terminals) <= self._circuits_found.keys():
             return False
-        return self._keeps_ties(body) and all(
-            self._fits_terminal(self.circuits[label], terminal)
+        return (
+            self._keeps_poles(body)
+            and self._keeps_ties(body)
+            and all(
+                self._fits_terminal(self.circuits[label], terminal)
+                for label in body.circuits
+                for terminal in self.left[label]
+            )
+        )
+
+    def _keeps_poles(self, body: Body) -> bool:
+        """Whether two-pole circuits end on two-pole breakers and single ones on single: two singles make no two-pole."""
+        return all(
+            set(self.left[label]) == set(self.found[other])
             for label in body.circuits
             for terminal in self.left[label]
+            for other in self._circuits_found[terminal]
         )
 
     @cached_property

@@ -136,6 +136,20 @@ def test_a_new_circuit_lands_on_the_equal_breaker_of_a_spare_that_gives_way(work
     assert [(step.circuit, step.how, step.is_new_breaker) for step in plan.steps] == [("N", How.NEW, False)]
 
 
+def test_two_single_breakers_are_no_two_pole_breaker(work, circuit):
+    singles = [circuit("X", "1"), circuit("S", "3", role=Role.SPARE), circuit("T", "5", role=Role.SPARE)]
+    plan = work(*singles, circuit("N", volts="240"), removed=("S", "T"), X="5", N="1-3")
+    step = {step.circuit: step for step in plan.steps}["N"]
+    assert step.is_new_breaker
+    assert step.action.startswith("Fit a 20 A standard two-pole breaker")
+    assert any(part.circuits == ("N",) for part in plan.parts)
+
+
+def test_a_single_circuit_does_not_take_one_pole_of_a_two_pole_breaker(work, circuit):
+    plan = work(circuit("S", "1-3", "240", role=Role.SPARE), circuit("N"), removed=("S",), N="1")
+    assert {step.circuit: step.is_new_breaker for step in plan.steps}["N"]
+
+
 def test_a_spare_that_changes_places_with_an_equal_breaker_moves_nothing(work, circuit):
     plan = work(circuit("X", "1"), circuit("S", "3", role=Role.SPARE), X="3", S="1")
     by_label = {step.circuit: step for step in plan.steps}
