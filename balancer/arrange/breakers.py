@@ -178,7 +178,7 @@ class _Assignment:
         )
 
     def _keeps_poles(self, body: Body) -> bool:
-        """Whether two-pole circuits end on two-pole breakers and single ones on single: two singles make no two-pole."""
+        """Whether two-pole circuits end on two-pole breakers found there, and single circuits on single ones."""
         return all(
             set(self.left[label]) == set(self.found[other])
             for label in body.circuits

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import dataclass
 
-from balancer.arrange.breakers import BreakerPlan, needed_rating_a
+from balancer.arrange.breakers import BreakerPlan, Source, needed_rating_a
 from balancer.arrange.work import How, Splice, Step
 from balancer.panel import Arrangement, Circuit, Installation, Landing, Panel, Role, format_landing
 
@@ -109,18 +109,35 @@ def _new_text(step: Step, circuit: Circuit) -> str:
     return f"Land the new {_conductor(circuit)} on the {breaker} already at {end}."
 
 
-def along_texts(step: Step, installation: Installation, as_left: Arrangement, breakers: BreakerPlan) -> tuple[str, ...]:
-    """Say what moves or changes with a circuit: load neutral, partners, metering coil, mounting screw, lower rating."""
-    circuit = installation.by_label[step.circuit]
-    if not step.to or circuit.role is Role.SPARE:
+def went_along_text(carrier: str) -> str:
+    """Say that a circuit is where it belongs already."""
+    return f"Nothing more to do: it went along with {carrier}, on the same breaker."
+
+
+@dataclass(frozen=True)
+class AlongView:
+    """What a step has around it: the work as a whole, the circuits that are done, and whose breaker it rode on."""
+
+    installation: Installation
+    as_left: Arrangement
+    breakers: BreakerPlan
+    done: Sequence[str] = ()
+    carrier: str = ""
+
+
+def along_texts(step: Step, view: AlongView) -> tuple[str, ...]:
+    """List what moves or changes with a circuit."""
+    circuit = view.installation.by_label[step.circuit]
+    if circuit.role is Role.SPARE or not step.to:
         return ()
     texts = [
         _rating_text(step, circuit),
         _neutral_text(step, circuit),
-        *_partner_texts(circuit, installation, as_left, breakers),
-        *_body_texts(step, circuit, installation),
-        _metering_text(step, installation.panel),
-        _bolt_text(step, installation.panel),
+        _bars_text(step, circuit),
+        *_partner_texts(step, circuit, view),
+        *_body_texts(step, circuit, view),
+        _metering_text(step, view.installation.panel),
+        _bolt_text(step, view.installation.panel),
     ]
     return tuple(text for text in texts if text)
 
@@ -135,37 +152,52 @@ def _rating_text(step: Step, circuit: Circuit) -> str:
 def _neutral_text(step: Step, circuit: Circuit) -> str:
     if not circuit.has_gfci_or_afci:
         return ""
+    own = "its own neutral (pigtail or clip) goes back on the neutral bar"
     if step.with_breaker:
-        return f"Its load neutral stays on the breaker; the breaker's own neutral connects at {space_words(step.to)}."
+        return f"Its load neutral stays on the breaker; {own}."
+    if step.how is How.NEW:
+        return f"Its load neutral goes on the breaker too; {own.replace('goes back', 'goes')}."
     new = "new " if step.is_new_breaker else ""
     return f"Its load neutral goes along, onto the {new}breaker at {space_words(step.to)}."
 
 
-def _partner_texts(
-    circuit: Circuit, installation: Installation, as_left: Arrangement, breakers: BreakerPlan
-) -> list[str]:
+def _bars_text(step: Step, circuit: Circuit) -> str:
+    """Name the other conductors of a circuit that was not landed before."""
+    if step.how is not How.NEW:
+        return ""
+    has_neutral_on_bar = circuit.volts.has_neutral and not circuit.has_gfci_or_afci
+    return (
+        f"Land its {'neutral and ' if has_neutral_on_bar else ''}equipment ground on the bar{'s' * has_neutral_on_bar}."
+    )
+
+
+def _partner_texts(step: Step, circuit: Circuit, view: AlongView) -> list[str]:
+    """Say where the partners are; the handles are tied when the last of them is landed."""
     texts = []
-    for other in installation.circuits:
+    for other in view.installation.circuits:
         bond = _bond_words(circuit, other)
-        end = as_left.get(other.label, other.landing)
-        if other.label == circuit.label or not bond or not end:
+        end = view.as_left.get(other.label, other.landing)
+        if other.label == circuit.label or not bond or not end or _is_on_same_body(step, other, view.breakers):
             continue
-        where = f"stays on {space_words(end)}" if end == other.landing else f"goes to {space_words(end)}"
+        is_there = end == other.landing or other.label in view.done
+        verb = "stays on" if end == other.landing else "is now on" if is_there else "goes later to"
         tie = frozenset((circuit.label, other.label))
-        is_new_tie = tie in breakers.ties_left and tie not in breakers.ties_found
-        texts.append(f"{bond}, {other.label}, {where}.{' Tie their handles.' if is_new_tie else ''}")
+        is_new_tie = is_there and tie in view.breakers.ties_left and tie not in view.breakers.ties_found
+        texts.append(f"{bond}, {other.label}, {verb} {space_words(end)}.{' Tie their handles.' if is_new_tie else ''}")
     return texts
 
 
-def _body_texts(step: Step, circuit: Circuit, installation: Installation) -> list[str]:
-    """Name what else hangs on the breaker body that is taken up; partners are named already."""
-    if not (step.from_ and step.with_breaker):
+def _is_on_same_body(step: Step, other: Circuit, breakers: BreakerPlan) -> bool:
+    goes_along = step.with_breaker and breakers.source.get(other.label) is Source.GOES_ALONG
+    return goes_along and bool({t.space for t in step.from_} & {t.space for t in other.landing})
+
+
+def _body_texts(step: Step, circuit: Circuit, view: AlongView) -> list[str]:
+    """Name what else hangs on the breaker body that is taken up, once."""
+    if view.carrier:
         return []
-    spaces = {terminal.space for terminal in step.from_}
-    others = [c for c in installation.circuits if c is not circuit and spaces & {t.space for t in c.landing}]
-    return [
-        f"{other.label}, on the same breaker body, goes along." for other in others if not _bond_words(circuit, other)
-    ]
+    others = [c for c in view.installation.circuits if c is not circuit and _is_on_same_body(step, c, view.breakers)]
+    return [f"{other.label}, on the same breaker body, goes along." for other in others]
 
 
 def _bond_words(one: Circuit, other: Circuit) -> str:
@@ -187,8 +219,8 @@ def _metering_text(step: Step, panel: Panel) -> str:
     if not changes:
         return ""
     if len(changes) > 1:
-        return "Metering coils (CTs) on its conductors, if any, change legs: set their phases."
-    return f"A metering coil (CT) on its conductor, if any, is on leg {changes[0]} now: set its phase."
+        return "CTs on it, if any: both change legs."
+    return f"CT on it, if any: now leg {changes[0]}."
 
 
 def _bolt_text(step: Step, panel: Panel) -> str:

@@ -10,9 +10,17 @@ from balancer.arrange.breakers import BreakerPlan, Source, breaker_bodies, neede
 from balancer.arrange.order import Item, Operation, order_moves
 from balancer.arrange.parts import list_parts
 from balancer.arrange.placements import longest_reach_in
-from balancer.arrange.step_words import Lifted, action_text, along_texts, splice_text
+from balancer.arrange.step_words import (
+    AlongView,
+    Lifted,
+    action_text,
+    along_texts,
+    space_words,
+    splice_text,
+    went_along_text,
+)
 from balancer.arrange.work import How, PreMoveTest, Splice, Step, Work
-from balancer.panel import Arrangement, Circuit, Installation, Landing, Role, Volts, format_landing
+from balancer.panel import Arrangement, Circuit, Installation, Landing, Role, Volts
 
 _SHORT_REACH_IN = 6.0
 """A re-landing up to here [in] needs no splice where nobody measured the slack."""
@@ -33,7 +41,9 @@ def build_work(installation: Installation, as_left: Arrangement, removed_spares:
     rework = _Rework(installation, as_left, tuple(removed_spares))
     items = rework.items()
     order = order_moves(items)
-    steps = tuple(step for operation in order.operations for step in rework.steps(items, operation))
+    steps: tuple[Step, ...] = ()
+    for operation in order.operations:
+        steps += rework.steps(items, operation, done=[step.circuit for step in steps])
     parts = list_parts(installation, as_left, rework.breakers, steps)
     return Work(steps=steps, parts=parts, pre_moves=_pre_move_tests(installation, steps), max_loose=order.max_loose)
 
@@ -134,14 +144,33 @@ class _Rework:
             return How.TURN
         return How.EXCHANGE if self._source(circuit) is Source.STAYS else How.MOVE_BREAKER
 
-    def steps(self, items: Sequence[Item], operation: Operation) -> list[Step]:
+    def steps(self, items: Sequence[Item], operation: Operation, done: Sequence[str]) -> tuple[Step, ...]:
         """Write the steps of one operation, a circuit each; what was lifted before belongs to the first of them."""
         lifted = [label for index in operation.lifted_before for label in items[index].circuits]
-        steps = []
+        steps: tuple[Step, ...] = ()
         for label in self._landing_order(items[operation.item]):
-            steps.append(self._step(label, lifted, was_lifted=operation.was_lifted))
-            lifted = []
+            before = [step.circuit for step in steps]
+            step = self._step(label, () if steps else lifted, was_lifted=operation.was_lifted)
+            steps += (self._with_words(step, [*done, *before], carriers=before),)
         return steps
+
+    def _with_words(self, step: Step, done: Sequence[str], carriers: Sequence[str]) -> Step:
+        """Put a step into words, knowing which circuits are done and which of them were in the same hand."""
+        circuit = self.installation.by_label[step.circuit]
+        carrier = next((label for label in carriers if self._is_one_breaker(step.circuit, label)), "")
+        lifted = [self._lifted(each) for each in step.lift_first]
+        return replace(
+            step,
+            action=went_along_text(carrier) if carrier else action_text(step, circuit, lifted),
+            goes_along=along_texts(step, AlongView(self.installation, self.as_left, self.breakers, done, carrier)),
+            splice_text=splice_text(step, circuit),
+        )
+
+    def _is_one_breaker(self, label: str, other: str) -> bool:
+        """Whether two circuits of one item sit on one breaker body that goes along."""
+        if {self.breakers.source.get(each) for each in (label, other)} != {Source.GOES_ALONG}:
+            return False
+        return any({label, other} <= body for body in self._bodies_left)
 
     def _landing_order(self, item: Item) -> list[str]:
         """Whatever stands in another's way within one body goes first."""
@@ -164,7 +193,7 @@ class _Rework:
         circuit = self.installation.by_label[label]
         source, to = self._source(circuit), self.to(circuit)
         reach_in = longest_reach_in(self.installation.panel, circuit.landing, to) if circuit.landing and to else 0.0
-        step = Step(
+        return Step(
             circuit=label,
             description=circuit.description,
             from_=circuit.landing,
@@ -177,12 +206,6 @@ class _Rework:
             breaker_a=circuit.breaker_a if self._keeps_breaker(circuit) else needed_rating_a(circuit),
             reach_in=reach_in,
             splice=_splice(circuit, reach_in),
-        )
-        return replace(
-            step,
-            action=action_text(step, circuit, [self._lifted(each) for each in lifted]),
-            goes_along=along_texts(step, self.installation, self.as_left, self.breakers),
-            splice_text=splice_text(step, circuit),
         )
 
     def _lifted(self, label: str) -> Lifted:
@@ -202,18 +225,12 @@ def _pre_move_tests(installation: Installation, steps: Sequence[Step]) -> tuple[
     """One test for every moved 120 V circuit of which nobody knows whether it shares its neutral."""
     moved = [installation.by_label[step.circuit] for step in steps if step.from_ and step.to]
     return tuple(
-        PreMoveTest(circuit=circuit.label, landing=circuit.landing, text=_pre_move_text(circuit))
+        PreMoveTest(
+            circuit=circuit.label, landing=circuit.landing, text=f"{circuit.label}, {space_words(circuit.landing)}"
+        )
         for circuit in sorted(moved, key=lambda each: each.landing)
         if circuit.volts is Volts.V120
         and circuit.role is not Role.SPARE
         and not circuit.shared_neutral
         and not circuit.is_neutral_checked
-    )
-
-
-def _pre_move_text(circuit: Circuit) -> str:
-    return (
-        f"With a load on {circuit.label} (space {format_landing(circuit.landing)}), clamp its hot and its neutral"
-        " together: 0 A means that the neutral is its own. With any other reading the neutral is shared: leave the"
-        " circuit where it is until its partner is found."
     )

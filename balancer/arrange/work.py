@@ -109,9 +109,17 @@ class Part:
     is_certain: bool = True
 
 
+PRE_MOVE_TEST = (
+    "With a load on the circuit and the others left running, clamp its hot and the neutral of the same cable together. "
+    "0 A: the neutral is its own. Any other reading: the neutral is shared or crossed; leave the circuit where it is "
+    "until its partner is found. A partner that is idle does not show."
+)
+"""How every circuit is tested of which nobody knows whether it shares its neutral."""
+
+
 @dataclass(frozen=True, kw_only=True)
 class PreMoveTest:
-    """A clamp-meter test of one circuit before the panel is shut off."""
+    """A clamp-meter test, as `PRE_MOVE_TEST` says, of one circuit before the panel is shut off; `text` names it."""
 
     circuit: str
     landing: Landing

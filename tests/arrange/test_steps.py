@@ -104,13 +104,22 @@ def test_a_tandem_body_moves_whole(steps, circuit):
     found = steps(*halves, circuit("Z", "4"), X="4a", Y="4b", Z="2")
     assert all(step.how is How.MOVE_BREAKER and step.with_breaker for step in found.values())
     assert found["X"].goes_along[0] == "Y, on the same breaker body, goes along."
+    assert found["Y"].action == "Nothing more to do: it went along with X, on the same breaker."
+    assert found["Y"].goes_along == ("CT on it, if any: now leg B.",)
 
 
 def test_a_pair_taken_out_of_a_tandem_lands_on_new_breakers(steps, circuit):
     pair = [circuit("P", "2a", shared_neutral="n"), circuit("Q", "2b", shared_neutral="n")]
     found = steps(*pair, P="5", Q="7")
     assert all(step.is_new_breaker for step in found.values())
-    assert "Its partner on the shared neutral, Q, goes to space 7. Tie their handles." in found["P"].goes_along
+    assert "Its partner on the shared neutral, Q, goes later to space 7." in found["P"].goes_along
+    assert "Its partner on the shared neutral, P, is now on space 5. Tie their handles." in found["Q"].goes_along
+
+
+def test_a_partner_that_stays_is_tied_at_once(steps, circuit):
+    pair = [circuit("P", "1", shared_neutral="n"), circuit("Q", "5", shared_neutral="n")]
+    along = steps(*pair, Q="3")["Q"].goes_along
+    assert "Its partner on the shared neutral, P, stays on space 1. Tie their handles." in along
 
 
 def test_a_conductor_does_not_move_onto_a_breaker_above_its_limit(steps, circuit):
@@ -162,6 +171,16 @@ def test_a_new_circuit_needs_a_breaker_and_hangs_nobody_loose(work, circuit):
     plan = work(circuit("N", breaker_a=None, breaker_type=""), N="9")
     assert (plan.steps[0].how, plan.steps[0].is_new_breaker, plan.max_loose) == (How.NEW, True, 0)
     assert plan.steps[0].action == "Fit a breaker at space 9 and land the new conductor on it."
+    assert plan.steps[0].goes_along == ("Land its neutral and equipment ground on the bars.",)
+
+
+def test_a_new_circuit_brings_its_neutral_and_ground(steps, circuit):
+    found = steps(circuit("G", breaker_type="gfci"), circuit("W", volts="240"), G="1", W="5-7")
+    assert found["G"].goes_along == (
+        "Its load neutral goes on the breaker too; its own neutral (pigtail or clip) goes on the neutral bar.",
+        "Land its equipment ground on the bar.",
+    )
+    assert found["W"].goes_along == ("Land its equipment ground on the bar.",)
 
 
 @pytest.mark.parametrize(
@@ -190,13 +209,14 @@ def test_the_load_neutral_of_a_gfci_goes_along_with_its_conductor(steps, circuit
     exchanged = steps(circuit("X", "1", **gfci), circuit("Y", "3", **gfci), X="3", Y="1")
     assert "Its load neutral goes along, onto the breaker at space 3." in exchanged["X"].goes_along
     along = steps(circuit("X", "1", **gfci), X="5")["X"].goes_along
-    assert along == ("Its load neutral stays on the breaker; the breaker's own neutral connects at space 5.",)
+    own = "its own neutral (pigtail or clip) goes back on the neutral bar"
+    assert along == (f"Its load neutral stays on the breaker; {own}.",)
 
 
 def test_a_metering_coil_is_named_only_where_the_leg_changes(steps, circuit):
     # Spaces 1 and 5 are on leg A, 3 on leg B (common practice).
     assert steps(circuit("X", "1"), X="5")["X"].goes_along == ()
-    assert "leg B" in steps(circuit("X", "1"), X="3")["X"].goes_along[0]
+    assert steps(circuit("X", "1"), X="3")["X"].goes_along == ("CT on it, if any: now leg B.",)
 
 
 def test_a_bolted_breaker_gets_its_screw(steps, circuit):
@@ -215,7 +235,7 @@ def test_a_bolted_breaker_gets_its_screw(steps, circuit):
 )
 def test_a_moved_circuit_is_tested_before_where_nobody_checked_its_neutral(work, circuit, cells, is_tested):
     tests = work(circuit("X", "1", **cells), X="5").pre_moves
-    assert [test.circuit for test in tests] == (["X"] if is_tested else [])
+    assert [(test.circuit, test.text) for test in tests] == ([("X", "X, space 1")] if is_tested else [])
 
 
 def test_what_stays_needs_neither_step_nor_test(work, circuit):
@@ -226,7 +246,9 @@ def test_what_stays_needs_neither_step_nor_test(work, circuit):
 def test_two_conductors_under_one_breaker_stay_together(work, circuit):
     plan = work(circuit("X", "1", tied="t"), circuit("Y", "1", tied="t"), X="5", Y="5")
     assert [(step.circuit, step.with_breaker) for step in plan.steps] == [("X", True), ("Y", True)]
-    assert "Tied to it, Y, goes to space 5." in plan.steps[0].goes_along
+    assert plan.steps[0].goes_along == ("Y, on the same breaker body, goes along.",)
+    assert plan.steps[1].action.endswith("it went along with X, on the same breaker.")
+    assert plan.steps[1].goes_along == ()
 
 
 def test_names_from_the_file_are_carried_as_they_are(steps, circuit):
