@@ -100,18 +100,26 @@ def ordinary_date(neutral_a: FloatArray, times: TimeArray, interval_s: float) ->
 
     Of an even number of days the lower median counts, of equal days the earlier.
     """
-    dates, day_of_row = np.unique(times.astype("datetime64[D]"), return_inverse=True)
-    peaks = np.zeros(len(dates))
+    first = times.min().astype("datetime64[D]")
+    day_of_row = _days_since(first, times)
+    peaks = np.zeros(int(day_of_row.max()) + 1)
     np.maximum.at(peaks, day_of_row, neutral_a)
-    # Distinct clock times, so that the hour read twice in autumn makes up for no gap.
-    distinct_dates, distinct = np.unique(np.unique(times).astype("datetime64[D]"), return_counts=True)
-    is_complete = distinct >= round(_DAY_S / interval_s)
-    complete = np.flatnonzero(np.isin(dates, distinct_dates[is_complete]))
+    read = np.bincount(_days_since(first, _distinct(times)), minlength=len(peaks))
+    complete = np.flatnonzero(read >= round(_DAY_S / interval_s))
     if not complete.size:
         return None
-    in_order = complete[np.argsort(peaks[complete], kind="stable")]
-    date: dt.date = dates[in_order[(len(in_order) - 1) // 2]].item()
-    return date
+    by_peak = complete[np.argsort(peaks[complete], kind="stable")]
+    return moment(first + by_peak[(len(by_peak) - 1) // 2]).date()
+
+
+def _days_since(first: np.datetime64, times: TimeArray) -> NDArray[np.int64]:
+    return np.asarray((times.astype("datetime64[D]") - first).astype(np.int64))
+
+
+def _distinct(times: TimeArray) -> TimeArray:
+    """Drop clock times that come again: the hour read twice in autumn makes up for no gap."""
+    in_order = np.sort(times)
+    return in_order[np.concatenate(([True], in_order[1:] != in_order[:-1]))]
 
 
 @dataclass(frozen=True, kw_only=True)

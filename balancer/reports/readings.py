@@ -72,11 +72,15 @@ def high_times_text(high: HighTimes) -> str:
         when = "are spread over the day"
     else:
         until = (high.hours.first + 3) % HOURS_A_DAY
-        when = f"fall {high.hours.share:.0%} between {high.hours.first:02}:00 and {until:02}:00"
+        when = f"fall {_percent(high.hours.share)} between {high.hours.first:02}:00 and {until:02}:00"
     if high.months is not None and high.months.share >= 0.5:
         last = (high.months.first + 1) % len(_MONTHS)
-        when += f", {high.months.share:.0%} from {_MONTHS[high.months.first - 1]} to {_MONTHS[last]}"
-    return f"The highest 1 % of the neutral's readings ({count_of(high.intervals, 'interval')}) {when}."
+        when += f", {_percent(high.months.share)} from {_MONTHS[high.months.first - 1]} to {_MONTHS[last]}"
+    return f"The highest 1 % of the neutral's readings ({high.intervals:,} intervals) {when}."
+
+
+def _percent(share: float) -> str:
+    return f"{100 * share:.0f} %"
 
 
 def spreads_table(answer: ReadingsAnswer) -> Table:
@@ -107,7 +111,7 @@ def loss_text(loss: NeutralLoss) -> str:
     ]
     sentences = []
     if loss.ratio is not None:
-        sentences.append(f"Energy lost in the neutral: as left {loss.ratio:.0%} of as found.")
+        sentences.append(f"Energy lost in the neutral: as left {_percent(loss.ratio)} of as found.")
     if yearly:
         sentences.append(f"In the service's neutral conductor that is {' and '.join(yearly)} a year.")
     return " ".join(sentences)
@@ -151,14 +155,15 @@ def _charts(days: tuple[ChartedDay, ...]) -> Iterator[RenderableType]:
 
 def _held_out(holdout: HoldOut) -> Iterator[RenderableType]:
     yield paragraph(holdout_text(holdout), style="bold")
-    table = figures_table("in A", "", "neutral 95 %", "99 %", "peak", "peak imbalance", "heavy leg", names=2)
+    table = figures_table("in A", "", "neutral 95 %", "99 %", "peak", "imbalance", "heavy leg", names=2)
+    table.columns[0].no_wrap = True
     for part in (holdout.before, holdout.after):
-        label = f"{part.label}, {part.intervals:,} intervals"
-        for name, each in (("as found", part.as_found), ("as left", part.as_left)):
-            if each is not None:
-                table.add_row(paragraph(label), name, *_judged_cells(each))
-                label = ""
+        known = [(name, each) for name, each in (("as found", part.as_found), ("as left", part.as_left)) if each]
+        for index, (name, each) in enumerate(known):
+            table.add_row("" if index else paragraph(part.label), name, *_judged_cells(each))
     yield table
+    counts = "; ".join(f"{part.intervals:,} intervals {part.label}" for part in (holdout.before, holdout.after))
+    yield paragraph(f"Imbalance and heavy leg: their peaks. {counts}.")
 
 
 def _judged_cells(judged: Distribution) -> tuple[str, ...]:
