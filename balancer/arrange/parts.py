@@ -97,11 +97,7 @@ def _splice_part(circuit: Circuit, step: Step) -> Part:
     wire = f" of {circuit.wire}" if circuit.wire else " of the same size and metal"
     short_in = math.ceil(step.reach_in - (circuit.slack_in or 0.0))
     length = f"at least {short_in} in" if step.splice is Splice.NEEDED else f"up to {short_in} in"
-    # NEC 312.8, from memory: splices in a panel's gutter must leave the wiring space it asks for.
-    text = (
-        f"listed connector and conductor{wire}, {length} and what making it up takes, for"
-        f" {circuit.label} (room for splices: NEC 2023, 312.8, from memory)"
-    )
+    text = f"for {circuit.label}: listed connector and conductor{wire}, {length} and what making it up takes"
     return Part(
         kind=PartKind.SPLICE,
         quantity=circuit.hot_conductors,

@@ -126,6 +126,10 @@ class Tradeoff:
     flat_from: int | None
     """Landings from which further ones buy under 0.05 A of the first objective; None where the curve still falls."""
     stop: Stop = Stop.NONE
+    refused: tuple[int, ...] = ()
+    """Caps under which no arrangement fits."""
+    refusal: str = ""
+    """Why none fits under the highest of them, in the user's words."""
 
 
 @dataclass(frozen=True)

@@ -37,8 +37,8 @@ def trade_landings(  # noqa: PLR0913 - what plan_arrangement takes, and the land
     Returns
     -------
     Tradeoff
-        A point for every cap under which the circuits fit at all; fewer where the clock or Ctrl-C cut it off. More
-        landings never make a point worse.
+        A point for every cap under which the circuits fit at all; the others are `refused`. Fewer where the clock or
+        Ctrl-C cut it off. More landings never make a point worse.
 
     Raises
     ------
@@ -47,7 +47,7 @@ def trade_landings(  # noqa: PLR0913 - what plan_arrangement takes, and the land
     """
     clock = Clock(options.time_limit_s, on_interrupt)
     points: list[TradeoffPoint] = []
-    refusal: InfeasibleError | None = None
+    refusals: list[tuple[int, InfeasibleError]] = []
     with clock.listening():
         for cap in landings:
             if clock.is_stopped:
@@ -65,10 +65,16 @@ def trade_landings(  # noqa: PLR0913 - what plan_arrangement takes, and the land
             except NoAnswerInTime:
                 break
             except InfeasibleError as error:
-                refusal = error
-    if not points and refusal is not None:
-        raise refusal
-    return Tradeoff(points=tuple(points), flat_from=_flat_from(points, options.aim), stop=clock.stop)
+                refusals.append((cap, error))
+    if not points and refusals:
+        raise refusals[-1][1]
+    return Tradeoff(
+        points=tuple(points),
+        flat_from=_flat_from(points, options.aim),
+        stop=clock.stop,
+        refused=tuple(cap for cap, _ in refusals),
+        refusal=str(refusals[-1][1]) if refusals else "",
+    )
 
 
 def _point(planner: Planner, cap: int) -> TradeoffPoint:

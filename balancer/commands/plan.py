@@ -64,12 +64,19 @@ def plan(files: InputFiles, wishes: Wishes, max_landings: int | None, saving: Sa
 
 def _answer(installation: Installation, scenarios: Scenarios, options: Options, progress: ProgressLine) -> PlanAnswer:
     from balancer.arrange.plan import plan_arrangement
+    from balancer.arrange.results import Tradeoff
     from balancer.arrange.tradeoff import trade_landings
+    from balancer.errors import InfeasibleError
     from balancer.reports.answers import plan_answer
 
     found = plan_arrangement(installation, scenarios, options, progress)
     fewer = fewer_landings(found.landings_changed) if found.is_complete else ()
-    return plan_answer(found, trade_landings(installation, scenarios, options, fewer, progress) if fewer else None)
+    if not fewer:
+        return plan_answer(found)
+    try:
+        return plan_answer(found, trade_landings(installation, scenarios, options, fewer, progress))
+    except InfeasibleError as refusal:
+        return plan_answer(found, Tradeoff(points=(), flat_from=None, refused=fewer, refusal=str(refusal)))
 
 
 def fewer_landings(landings: int) -> tuple[int, ...]:

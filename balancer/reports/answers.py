@@ -85,7 +85,7 @@ def plan_answer(plan: Plan, fewer: Tradeoff | None = None) -> PlanAnswer:
     """Gather the work, the clamp check and the findings of a plan."""
     before = as_found_answer(plan.installation, plan.scenarios)
     findings = check_installation(plan.installation, plan.as_left)
-    explanation = explain_peak(PanelCurrents(plan.installation, plan.scenarios), plan.as_left)
+    explanation = explain_peak(PanelCurrents(plan.installation, plan.scenarios), plan.as_left, plan.options)
     return PlanAnswer(
         plan=plan,
         work=build_work(plan.installation, plan.as_left, plan.removed_spares),

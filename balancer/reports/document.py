@@ -9,7 +9,7 @@ from typing import Any
 from balancer.arrange.clamp import ClampReading
 from balancer.arrange.explain import PeakExplanation
 from balancer.arrange.results import ObjectiveResult, Plan, Tradeoff
-from balancer.arrange.work import Step, Work
+from balancer.arrange.work import PRE_MOVE_TEST, Step, Work
 from balancer.electrical.phasors import Peaks
 from balancer.electrical.scenarios import Scenarios
 from balancer.errors import Problem
@@ -42,6 +42,7 @@ def plan_document(answer: PlanAnswer) -> Document:
         "peak": _explanation(answer.explanation) | {"held_up_by": answer.explanation.sentence},
         "voltages": {"as_found": _voltages(answer.before.voltages), "as_left": _voltages(answer.voltages)},
         "fewer_landings": [] if answer.fewer is None else _points(answer.fewer),
+        "fewer_refused": _refused(answer.fewer) if answer.fewer else {"landings": [], "reason": ""},
         "clamp_check": [_clamp(reading) for reading in answer.clamp_readings],
         **_work(answer.work),
         "removed_spares": list(plan.removed_spares),
@@ -84,6 +85,7 @@ def tradeoff_document(installation: Installation, scenarios: Scenarios, tradeoff
         **_head(installation, scenarios),
         "points": _points(tradeoff),
         "flat_from": tradeoff.flat_from,
+        "refused": _refused(tradeoff),
         "complete": not tradeoff.stop,
         "notes": _notes(installation, scenarios),
     }
@@ -206,6 +208,7 @@ def _points(tradeoff: Tradeoff) -> list[Document]:
     return [
         {
             "landings": point.landings,
+            "landings_changed": point.landings_changed,
             "peak_neutral": _rounded(point.peak_neutral_a),
             "peak_imbalance": _rounded(point.peak_imbalance_a),
             "peak_heavy_leg": _rounded(point.peak_heavy_leg_a),
@@ -214,6 +217,10 @@ def _points(tradeoff: Tradeoff) -> list[Document]:
         }
         for point in tradeoff.points
     ]
+
+
+def _refused(tradeoff: Tradeoff) -> Document:
+    return {"landings": list(tradeoff.refused), "reason": tradeoff.refusal}
 
 
 def _clamp(reading: ClampReading) -> Document:
@@ -234,6 +241,7 @@ def _work(work: Work) -> Document:
             {"part": str(part.kind), "quantity": part.quantity, "circuits": list(part.circuits), "text": part.text}
             for part in work.parts
         ],
+        "pre_move_test": PRE_MOVE_TEST if work.pre_moves else "",
         "pre_move_tests": [
             {"circuit": test.circuit, "space": format_landing(test.landing), "text": test.text}
             for test in work.pre_moves

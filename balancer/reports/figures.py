@@ -80,7 +80,7 @@ def largest_possible_text(installation: Installation) -> str:
     beside = "" if main_a is None else f" (main: {main_a:g} A)"
     return (
         f"Largest possible neutral{beside}: any choice of the loads running at full load. It is an upper bound; the "
-        "size the code asks of a neutral is 220.61's calculated load, another matter."
+        "size the code asks of a neutral is the calculated load of NEC 2023, 220.61, another matter."
     )
 
 

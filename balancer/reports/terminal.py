@@ -9,10 +9,11 @@ from rich.text import Text
 
 from balancer.arrange.explain import PeakExplanation
 from balancer.arrange.results import Aim, Plan, Tradeoff
+from balancer.arrange.work import PRE_MOVE_TEST
 from balancer.electrical.scenarios import Scenarios
 from balancer.panel import Installation
 from balancer.reports.answers import AsFoundAnswer, PlanAnswer
-from balancer.reports.cautions import AFTER, BEFORE
+from balancer.reports.cautions import AFTER, AFTER_NO_WORK, BEFORE, LIVE_WORK
 from balancer.reports.directory import directory_legend, directory_table
 from balancer.reports.face import MARK, PanelFace
 from balancer.reports.figures import (
@@ -24,13 +25,19 @@ from balancer.reports.figures import (
     when_lines,
 )
 from balancer.reports.findings import findings_count, findings_list
-from balancer.reports.text import bullets, format_amps, numbered, paragraph, section, visible
-from balancer.reports.verdict import flat_text, proof_table, tradeoff_table, verdict
+from balancer.reports.text import bullets, format_amps, list_of, numbered, paragraph, section, visible
+from balancer.reports.verdict import flat_text, proof_notes, proof_table, tradeoff_notes, tradeoff_table, verdict
 from balancer.reports.voltages import PanelVoltages, voltages_block
 from balancer.reports.work import clamp_table, part_list, pre_move_list, step_list
-from balancer.rules import errors_of
+from balancer.rules import Finding, check_installation, errors_of, new_errors
 
-CLAMP_INTRO = "Everything else off. Switch these on one after the other; the meter must read, in amps:"
+CLAMP_INTRO = f"{LIVE_WORK} Everything else off. Switch these on one after the other; the meter must read, in amps:"
+
+CLAMP_NOTES = (
+    "Each line may be off by its last figure, on every reading. An outlet circuit carries its amps only with that much "
+    "plugged in, a heater or motor only while it runs; with another load the same leg must rise.",
+    "Where the other leg rises, the circuit is on the wrong leg: shut off and lock out again before you touch it.",
+)
 
 
 def plan_report(answer: PlanAnswer) -> Group:
@@ -88,11 +95,23 @@ def check_report(answer: AsFoundAnswer) -> Group:
 def tradeoff_report(installation: Installation, scenarios: Scenarios, tradeoff: Tradeoff, aim: Aim) -> Group:
     """Show what each further landing buys."""
     blocks: list[RenderableType] = [_title(installation), paragraph(flat_text(tradeoff), style="bold"), Text("")]
-    blocks.append(tradeoff_table(tradeoff, aim))
+    blocks.append(_tradeoff(tradeoff, aim, _cured_by(installation, tradeoff)))
     if tradeoff.stop:
         blocks.append(paragraph(f"Cut off by the {tradeoff.stop}: the figures are the best found so far."))
     blocks.append(section("What the figures rest on", bullets(basis_lines(installation, scenarios))))
     return Group(*blocks)
+
+
+def _tradeoff(tradeoff: Tradeoff, aim: Aim, cured: Sequence[Finding]) -> Group:
+    table: list[RenderableType] = [tradeoff_table(tradeoff, aim), Text("")] if tradeoff.points else []
+    return Group(*table, bullets(tradeoff_notes(tradeoff, aim, cured)))
+
+
+def _cured_by(installation: Installation, tradeoff: Tradeoff) -> tuple[Finding, ...]:
+    if not (tradeoff.points and tradeoff.refused):
+        return ()
+    fewest = check_installation(installation, tradeoff.points[0].arrangement)
+    return new_errors(fewest, check_installation(installation))
 
 
 def _title(installation: Installation) -> Text:
@@ -102,8 +121,16 @@ def _title(installation: Installation) -> Text:
 def _remaining_errors(answer: PlanAnswer) -> list[str]:
     if not answer.has_errors:
         return []
-    rules = ", ".join(dict.fromkeys(finding.rule for finding in errors_of(answer.findings)))
-    return [f"Errors remain that no re-landing cures ({rules}): see the findings. Mend them first."]
+    errors = errors_of(answer.findings)
+    rules = ", ".join(dict.fromkeys(finding.rule for finding in errors))
+    circuits = answer.plan.installation.by_label
+    named = [label for finding in errors for label in finding.circuits if circuits[label].is_fixed]
+    which = "that no re-landing cures"
+    fixed = ""
+    if named:
+        which = "that this plan cannot cure"
+        fixed = f" Marked fixed: {list_of(list(dict.fromkeys(named)))}; release what may move."
+    return [f"Errors remain {which} ({rules}): see the findings. Mend them first.{fixed}"]
 
 
 def _figures(title: str, columns: Sequence[PeaksColumn], installation: Installation) -> Iterator[RenderableType]:
@@ -134,12 +161,12 @@ def _reasons(answer: PlanAnswer) -> Iterator[RenderableType]:
     if plan.peaks_as_found is not None:
         columns.insert(0, PeaksColumn("as found", plan.peaks_as_found, before.averages_peak_a))
         when = when_lines(plan.scenarios, "As found", plan.peaks_as_found) + when
-    yield from _figures("As found and as left", columns, plan.installation)
+    yield from _figures("As found and as left" if len(columns) > 1 else "As left", columns, plan.installation)
     held_up = paragraph(f"What holds it up: {answer.explanation.sentence}")
     yield from _peak(when, answer.explanation, held_up)
-    yield section("How good it is", proof_table(plan.objectives))
-    if answer.fewer is not None and answer.fewer.points:
-        yield section("What fewer landings would give", tradeoff_table(answer.fewer, plan.options.aim))
+    yield section("How good it is", proof_table(plan.objectives), Text(""), bullets(proof_notes(plan)))
+    if answer.fewer is not None and (answer.fewer.points or answer.fewer.refused):
+        yield section("What fewer landings would give", _tradeoff(answer.fewer, plan.options.aim, answer.cured))
     yield from _voltages([("as found", before.voltages), ("as left", answer.voltages)])
     yield section("What the figures rest on", bullets(basis_lines(plan.installation, plan.scenarios)))
 
@@ -149,9 +176,7 @@ def _work(answer: PlanAnswer) -> Iterator[RenderableType]:
     if not work.steps:
         return
     if work.pre_moves:
-        intro = (
-            "While the panel is still live. A reading other than 0 A: the neutral is shared or crossed, do not move."
-        )
+        intro = f"{LIVE_WORK} {PRE_MOVE_TEST}"
         yield section("Tests before shutting off", paragraph(intro), pre_move_list(work.pre_moves))
     yield section("Before the first step", numbered(paragraph(caution) for caution in BEFORE))
     yield section("Steps", step_list(work))
@@ -177,7 +202,8 @@ def _face_legend(marked: str) -> list[Text]:
 def _after(answer: PlanAnswer) -> Iterator[RenderableType]:
     plan = answer.plan
     if answer.clamp_readings:
-        yield section("Clamp check", paragraph(CLAMP_INTRO), clamp_table(answer.clamp_readings))
+        notes = bullets(CLAMP_NOTES)
+        yield section("Clamp check", paragraph(CLAMP_INTRO), clamp_table(answer.clamp_readings), Text(""), notes)
     yield section(
         "Directory",
         directory_table(plan.installation, plan.as_left),
@@ -187,4 +213,4 @@ def _after(answer: PlanAnswer) -> Iterator[RenderableType]:
         yield section("Cured by this plan", findings_list(answer.cured))
     if answer.findings:
         yield section("Findings as left", findings_list(answer.findings))
-    yield section("Afterwards", bullets(AFTER))
+    yield section("Afterwards", bullets(AFTER if answer.work.steps else AFTER_NO_WORK))

@@ -9,7 +9,7 @@ from rich.table import Table
 from rich.text import Text
 
 from balancer.arrange.clamp import ClampReading
-from balancer.arrange.work import Part, PreMoveTest, Step, Work
+from balancer.arrange.work import Part, PartKind, PreMoveTest, Step, Work
 from balancer.reports.text import bullets, count_of, figures_table, format_number, numbered, paragraph
 
 
@@ -38,14 +38,17 @@ def _step(step: Step) -> Group:
     return Group(*blocks)
 
 
-def part_list(parts: Sequence[Part]) -> Table:
+def part_list(parts: Sequence[Part]) -> Group:
     """List what to bring."""
-    return bullets(part.text if part.is_certain else f"{part.text} (may not be needed)" for part in parts)
+    listed = bullets(part.text if part.is_certain else f"perhaps {part.text}" for part in parts)
+    if not any(part.kind is PartKind.SPLICE for part in parts):
+        return Group(listed)
+    return Group(listed, paragraph("Splices need room in the panel: NEC 2023, 312.8, from memory."))
 
 
 def clamp_table(readings: Sequence[ClampReading]) -> Table:
     """Show what the meter must read as circuits are switched on one after the other."""
-    table = figures_table("then switch on", "leg A", "leg B", "neutral", "within", names=1)
+    table = figures_table("switch on", "leg A", "leg B", "neutral", "within", names=1)
     for reading in readings:
         figures = (reading.leg_a_a, reading.leg_b_a, reading.neutral_a, reading.tolerance_a)
         name = f"{reading.switch_on} (assumed load)" if reading.is_assumed else reading.switch_on

@@ -121,7 +121,12 @@ def _not_standard(landed: LandedPanel) -> Iterator[Observation]:
 
 
 CONDUCTOR_RULES = (
-    Rule("breaker-above-conductor", Severity.ERROR, "NEC 2023, 240.4(B) and (D), Table 310.16", _above_conductor),
+    Rule(
+        "breaker-above-conductor",
+        Severity.ERROR,
+        "NEC 2023, 240.4(B) (from memory) and (D), Table 310.16",
+        _above_conductor,
+    ),
     Rule("breaker-above-nameplate", Severity.ERROR, "NEC 2023, 110.3(B) and 440.4(B) (from memory)", _above_nameplate),
     Rule("wire-below-nameplate", Severity.ERROR, "NEC 2023, 440.4(B) (from memory), Table 310.16", _below_nameplate),
     Rule(

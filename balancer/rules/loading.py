@@ -60,7 +60,11 @@ def _continuous(landed: LandedPanel) -> Iterator[Observation]:
         if not (circuit.is_continuous or article) or not _is_above(load_a, allowed_a):
             continue
         assumed = " (assumed load)" if circuit.load.is_assumed else ""
-        why = "" if circuit.is_continuous else f" Not marked continuous, but {article} counts most such loads so."
+        why = (
+            ""
+            if circuit.is_continuous
+            else f" Not marked continuous, but {article} (from memory) counts most such loads so."
+        )
         message = (
             f"{landed.name(circuit)}: {load_a:.1f} A{assumed} of continuous load on a {breaker_a:g} A breaker, which "
             f"may carry {allowed_a:g} A for three hours or more (80 %).{why} Take load off it, or fit a larger breaker "

@@ -225,6 +225,20 @@ def test_a_finished_plan_is_shown_when_what_follows_is_interrupted(
     assert "(proven)" in result.stdout
 
 
+def test_a_plan_is_shown_where_fewer_landings_do_not_fit(
+    run: Run, house: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    stand_in(monkeypatch, StandInPlanner(moves=MOVES))
+
+    def refuse(*_: object) -> Tradeoff:
+        raise InfeasibleError(["at most 1 landings may change"])
+
+    monkeypatch.setattr("balancer.arrange.tradeoff.trade_landings", refuse)
+    result = run("plan", house)
+    assert result.exit_code == 0
+    assert "With 1 landing no arrangement fits: at most 1 landings may change." in " ".join(result.stdout.split())
+
+
 @pytest.mark.parametrize(
     ("landings", "caps"), [(0, ()), (1, ()), (2, (1,)), (3, (1, 2)), (4, (1, 2, 3)), (10, (2, 5, 7))]
 )

@@ -109,6 +109,7 @@ def test_tradeoff_document_has_a_point_a_cap(answer: PlanAnswer) -> None:
     assert document["points"] == [
         {
             "landings": 1,
+            "landings_changed": 1,
             "peak_neutral": 21.0,
             "peak_imbalance": 20.0,
             "peak_heavy_leg": 60.0,
@@ -116,6 +117,21 @@ def test_tradeoff_document_has_a_point_a_cap(answer: PlanAnswer) -> None:
             "proven": True,
         }
     ]
+
+
+def test_documents_name_the_landings_under_which_nothing_fits(answer: PlanAnswer) -> None:
+    assert answer.fewer is not None
+    fewer = replace(answer.fewer, refused=(0, 1), refusal="at most 1 landings may change")
+    expected = {"landings": [0, 1], "reason": "at most 1 landings may change"}
+    assert tradeoff_document(answer.plan.installation, answer.plan.scenarios, fewer)["refused"] == expected
+    assert plan_document(replace(answer, fewer=fewer))["fewer_refused"] == expected
+    assert plan_document(replace(answer, fewer=None))["fewer_refused"] == {"landings": [], "reason": ""}
+
+
+def test_the_neutral_test_is_told_once(answer: PlanAnswer) -> None:
+    document = plan_document(answer)
+    assert "clamp its hot" in document["pre_move_test"]
+    assert [test["circuit"] for test in document["pre_move_tests"]] == ["kitchen"]
 
 
 def test_error_document_has_its_keys_in_order() -> None:

@@ -5,6 +5,7 @@ import pytest
 from rich.cells import cell_len
 
 from balancer.arrange.results import Aim, Plan
+from balancer.arrange.work import Work
 from balancer.panel import Installation
 from balancer.reports.answers import AsFoundAnswer, PlanAnswer
 from balancer.reports.terminal import as_found_report, check_report, plan_report, tradeoff_report
@@ -99,6 +100,31 @@ def test_remaining_errors_are_said_beside_the_verdict(
     text = " ".join(render(plan_report(replace(answer, findings=(error_finding,)))).split())
     assert "Errors remain that no re-landing cures (breaker-above-conductor)" in text
     assert "Errors remain" not in render(plan_report(answer))
+
+
+def test_an_error_on_fixed_circuits_says_what_stands_in_the_way(
+    answer: PlanAnswer, error_finding: Finding, render: Render
+) -> None:
+    installation = answer.plan.installation
+    circuits = tuple(replace(c, is_fixed=c.label == "hall") for c in installation.circuits)
+    plan = replace(answer.plan, installation=replace(installation, circuits=circuits))
+    text = " ".join(render(plan_report(replace(answer, plan=plan, findings=(error_finding,)))).split())
+    assert "that this plan cannot cure (breaker-above-conductor)" in text
+    assert "Marked fixed: hall; release what may move." in text
+
+
+def test_the_clamp_meter_comes_with_its_cautions(answer: PlanAnswer, render: Render) -> None:
+    text = " ".join(render(plan_report(answer)).split())
+    assert text.count("The panel is live and open: only a qualified person") == 2
+    assert "A partner that is idle does not show." in text
+    assert "the circuit is on the wrong leg: shut off and lock out again" in text
+
+
+def test_a_plan_without_work_asks_for_no_torque(answer: PlanAnswer, render: Render) -> None:
+    idle = replace(answer, work=Work(steps=(), parts=(), pre_moves=(), max_loose=0))
+    assert "Torque" in render(plan_report(answer))
+    assert "Torque" not in render(plan_report(idle))
+    assert "licensed electrician decide" in " ".join(render(plan_report(idle)).split())
 
 
 def test_cured_findings_stand_apart_from_those_that_remain(answer: PlanAnswer, render: Render) -> None:

@@ -4,7 +4,8 @@ from dataclasses import replace
 import pytest
 
 from balancer.arrange.results import Aim, ObjectiveName, Options, Plan, Stop, Tradeoff
-from balancer.reports.verdict import flat_text, proof_table, verdict
+from balancer.reports.answers import PlanAnswer
+from balancer.reports.verdict import flat_text, proof_notes, proof_table, tradeoff_notes, verdict
 
 Render = Callable[..., str]
 
@@ -66,3 +67,45 @@ def test_proof_table_tells_proven_from_bounded(plan: Plan, render: Render) -> No
 )
 def test_flat_part_of_the_curve_is_named(flat_from: int | None, words: str) -> None:
     assert words in flat_text(Tradeoff(points=(), flat_from=flat_from))
+
+
+def test_verdict_of_a_first_figure_that_stays_names_what_changes(plan: Plan) -> None:
+    assert plan.peaks_as_found is not None
+    same = replace(plan.peaks_as_left, neutral=plan.peaks_as_found.neutral)
+    text = verdict(replace(plan, peaks_as_left=same))
+    assert text.startswith("Peak neutral stays at 31.0 A and the peak heavy leg falls from 70.0 A to 61.0 A with")
+
+
+def test_verdict_of_averages_calls_them_so(plan: Plan) -> None:
+    averages = replace(plan.scenarios, are_averages=True)
+    assert "averages over an interval" in verdict(replace(plan, scenarios=averages))
+    assert "averages" not in verdict(plan)
+
+
+def test_proof_is_said_to_hold_for_the_loads_and_before_anything_was_given_up(plan: Plan) -> None:
+    text = " ".join(proof_notes(plan))
+    assert "For the loads given" in text
+    assert "before up to 0.25 A of each was given up to save landings" in text
+    exact = " ".join(proof_notes(replace(plan, options=Options(within_a=0.0, max_landings=1))))
+    assert "given up" not in exact
+    assert "with at most 1 landing." in exact
+
+
+def test_tradeoff_says_which_landings_buy_nothing(answer: PlanAnswer) -> None:
+    assert answer.fewer is not None
+    (point,) = answer.fewer.points
+    figures = {1: 21.0, 2: 15.0, 3: 15.0, 4: 9.0}
+    points = tuple(replace(point, landings=cap, peak_neutral_a=value) for cap, value in figures.items())
+    notes = " ".join(tradeoff_notes(Tradeoff(points=points, flat_from=None), Aim.NEUTRAL, ()))
+    assert "3 landings buy nothing beyond 2." in notes
+    assert "imbalance and heavy leg are what comes with it" in notes
+
+
+@pytest.mark.parametrize(
+    ("is_cured", "reason"),
+    [(True, "curing breaker-above-conductor (hall) takes more"), (False, "at most 1 landings may change")],
+)
+def test_tradeoff_says_with_how_many_landings_nothing_fits(answer: PlanAnswer, is_cured: bool, reason: str) -> None:
+    curve = Tradeoff(points=(), flat_from=None, refused=(0, 1), refusal="at most 1 landings may change")
+    notes = tradeoff_notes(curve, Aim.NEUTRAL, answer.cured if is_cured else ())
+    assert notes == [f"With 0 or 1 landings no arrangement fits: {reason}."]

@@ -1,0 +1,32 @@
+import pytest
+
+from balancer.arrange.results import Options
+from balancer.arrange.tradeoff import trade_landings
+from balancer.electrical.scenario_sets import connected_scenarios
+from balancer.errors import InfeasibleError
+
+
+@pytest.fixture
+def pair_on_one_leg(installation, circuit):
+    # Curing it takes one landing at least.
+    pair = [circuit("P", "1", amps=9.0, shared_neutral="n"), circuit("Q", "5", amps=8.0, shared_neutral="n")]
+    return installation(*pair, circuit("X", "9", amps=7.0))
+
+
+def test_caps_under_which_nothing_fits_are_told(pair_on_one_leg):
+    curve = trade_landings(pair_on_one_leg, connected_scenarios(pair_on_one_leg), Options(), [0, 1, 2])
+    assert curve.refused == (0,)
+    assert "0 landings" in curve.refusal
+    assert [point.landings for point in curve.points] == [1, 2]
+
+
+def test_a_curve_without_refusals_says_so(installation, circuit):
+    wall = installation(circuit("X", "1"), circuit("Y", "5"))
+    curve = trade_landings(wall, connected_scenarios(wall), Options(), [0, 1])
+    assert (curve.refused, curve.refusal) == ((), "")
+    assert [point.peak_neutral_a for point in curve.points] == pytest.approx([10.0, 0.0])
+
+
+def test_nothing_fits_under_any_cap(pair_on_one_leg):
+    with pytest.raises(InfeasibleError):
+        trade_landings(pair_on_one_leg, connected_scenarios(pair_on_one_leg), Options(), [0])
