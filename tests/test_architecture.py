@@ -32,7 +32,7 @@ THIRD_PARTY = {
     "electrical": {"numpy"},
     "rules": {"numpy"},
     "arrange": {"numpy", "ortools"},
-    "files": {"numpy", "openpyxl"},
+    "files": {"numpy", "openpyxl", "pandas"},
     "reports": {"numpy", "rich"},
     "commands": {"click", "rich"},
 }

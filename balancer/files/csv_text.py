@@ -10,7 +10,7 @@ from balancer.errors import InputError
 from balancer.files.problems import one_problem
 from balancer.files.sheet import BLANKS, COMMENT, Sheet, SheetRow, is_comment, sheet_row
 
-_DELIMITERS = (",", ";", "\t")
+DELIMITERS = (",", ";", "\t")
 
 
 class _Lines:
@@ -78,11 +78,11 @@ def _split_off_delimiter(text: str) -> tuple[str, str]:
     """Take the separator from a first line ``sep=;``, else the one that cuts the header into most cells."""
     first, _, _ = text.partition("\n")
     announced = first.strip().casefold()
-    if announced.startswith("sep=") and first.strip("\r\n")[4:5] in _DELIMITERS:
+    if announced.startswith("sep=") and first.strip("\r\n")[4:5] in DELIMITERS:
         # A comment in its place keeps the line numbers right.
         return COMMENT + text, first[4]
     for line in io.StringIO(text, newline=""):
         if line.strip(BLANKS) and not is_comment(line):
             outside_quotes = "".join(line.split('"')[::2])
-            return text, max(_DELIMITERS, key=outside_quotes.count)
-    return text, _DELIMITERS[0]
+            return text, max(DELIMITERS, key=outside_quotes.count)
+    return text, DELIMITERS[0]
