@@ -13,7 +13,7 @@ from balancer.electrical.days import HOURS_A_DAY, Coverage, HighTimes
 from balancer.electrical.durations import Distribution, HoldOut, JudgedPart, Spread
 from balancer.reports.day_chart import CHART_LEGEND, day_chart
 from balancer.reports.readings_answer import QUANTITIES, ChartedDay, Level, NeutralLoss, ReadingsAnswer, ReadingsProof
-from balancer.reports.text import count_of, figures_table, format_amps, format_number, paragraph, section
+from balancer.reports.text import figures_table, format_amps, format_number, paragraph, section
 
 _DAY_NAMES = {"ordinary": "An ordinary day", "worst": "The worst day"}
 _WEEKDAYS = ("Monday", "Tuesday", "Wednesday", "Thursday", "Friday", "Saturday", "Sunday")
@@ -40,30 +40,9 @@ def readings_sections(answer: ReadingsAnswer) -> Iterator[RenderableType]:
         yield section("Does it hold?", *_held_out(answer.holdout))
 
 
-def averages_text(interval_s: float) -> str:
-    """Say what an interval is an average of."""
-    return (
-        f"Every reading is an average over {interval_text(interval_s)}: shorter moments, motor starts above "
-        "all, may be higher."
-    )
-
-
-def interval_text(interval_s: float) -> str:
-    """Name the length of an interval in the unit that suits it."""
-    if interval_s < 60:
-        return count_of(round(interval_s), "second")
-    if interval_s < 3600 or interval_s % 3600:
-        return _plural(interval_s / 60, "minute")
-    return _plural(interval_s / 3600, "hour")
-
-
-def _plural(number: float, noun: str) -> str:
-    return f"{number:g} {noun}{'' if number == 1 else 's'}"
-
-
-def when_text(time: dt.datetime) -> str:
-    """Name a moment of a log as a reader looks it up: day of the week, date and time of day."""
-    return f"{_WEEKDAYS[time.weekday()]} {time:%Y-%m-%d %H:%M}"
+def date_text(date: dt.date) -> str:
+    """Name a day of a log as a reader looks it up: workdays and days off differ."""
+    return f"{_WEEKDAYS[date.weekday()]} {date.isoformat()}"
 
 
 def high_times_text(high: HighTimes) -> str:
@@ -148,7 +127,7 @@ def _charts(days: tuple[ChartedDay, ...]) -> Iterator[RenderableType]:
     for index, day in enumerate(days):
         if index:
             yield Text("")
-        yield paragraph(f"{_DAY_NAMES[day.name]}, {day.date}")
+        yield paragraph(f"{_DAY_NAMES[day.name]}, {date_text(day.date)}")
         columns = (("as found", day.as_found), ("as left", day.as_left))
         yield day_chart([(name, curve) for name, curve in columns if curve is not None])
 

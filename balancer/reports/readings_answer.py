@@ -4,9 +4,9 @@ from __future__ import annotations
 
 import datetime as dt
 from collections.abc import Iterator, Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
-from balancer.arrange.results import ObjectiveResult
+from balancer.arrange.results import ObjectiveResult, Plan
 from balancer.electrical.days import (
     Coverage,
     DayCurve,
@@ -28,7 +28,7 @@ from balancer.electrical.durations import (
     neutral_loss_kwh,
 )
 from balancer.electrical.impedances import service_impedances
-from balancer.electrical.phasors import LegCurrents
+from balancer.electrical.phasors import LegCurrents, PanelCurrents
 from balancer.electrical.scenarios import Scenarios
 from balancer.panel import Installation
 
@@ -60,10 +60,10 @@ class NeutralLoss:
 
 @dataclass(frozen=True, kw_only=True, eq=False)
 class ChartedDay:
-    """A day to look at hour by hour; `name` says which, `date` is as ISO 8601 writes it."""
+    """A day to look at hour by hour; `name` is ``ordinary`` or ``worst``."""
 
     name: str
-    date: str
+    date: dt.date
     as_found: DayCurve | None
     as_left: DayCurve | None
 
@@ -136,6 +136,35 @@ def readings_answer(
     )
 
 
+def found_readings(installation: Installation, scenarios: Scenarios) -> ReadingsAnswer | None:
+    """Gather the statistics of a log for the panel as it stands; None where there are none."""
+    if scenarios.times is None or not installation.as_found:
+        return None
+    found = PanelCurrents(installation, scenarios).currents(installation.as_found)
+    return readings_answer(installation, scenarios, found, None)
+
+
+def planned_readings(plan: Plan, holdout: HoldOut | None = None, rows: int | None = None) -> ReadingsAnswer | None:
+    """Gather the statistics of a log for a plan; None where it was not made on readings.
+
+    Parameters
+    ----------
+    plan
+        The plan; its scenarios are the log.
+    holdout
+        How it did on readings that it never saw, where some were kept from it.
+    rows
+        How many intervals had to be weighed; None where they were not counted.
+    """
+    if plan.scenarios.times is None:
+        return None
+    currents = PanelCurrents(plan.installation, plan.scenarios)
+    found = currents.currents(plan.as_found) if plan.as_found else None
+    answer = readings_answer(plan.installation, plan.scenarios, found, currents.currents(plan.as_left))
+    proof = ReadingsProof(first=plan.objectives[0], rows=rows)
+    return None if answer is None else replace(answer, holdout=holdout, proof=proof)
+
+
 def _levels(found: LegCurrents | None, left: LegCurrents | None, governing: LegCurrents) -> Iterator[Level]:
     for quantity in QUANTITIES:
         for level_a in levels_below(float(getattr(governing, quantity).max())):
@@ -164,7 +193,7 @@ def _days(
         if date is not None:
             yield ChartedDay(
                 name=name,
-                date=date.isoformat(),
+                date=date,
                 as_found=None if found is None else day_curve(found, times, date),
                 as_left=None if left is None else day_curve(left, times, date),
             )

@@ -73,7 +73,7 @@ def _run(run: Run | None) -> Document | None:
 
 
 def _day(day: ChartedDay) -> Document:
-    return {"date": day.date, "as_found": _curve(day.as_found), "as_left": _curve(day.as_left)}
+    return {"date": day.date.isoformat(), "as_found": _curve(day.as_found), "as_left": _curve(day.as_left)}
 
 
 def _curve(curve: DayCurve | None) -> Document | None:

@@ -1,5 +1,6 @@
 import datetime as dt
 import json
+import re
 from collections.abc import Callable
 from dataclasses import replace
 
@@ -7,7 +8,7 @@ import numpy as np
 import pytest
 from rich.console import Group
 
-from balancer.arrange.results import ObjectiveName, ObjectiveResult
+from balancer.arrange.results import ObjectiveName, ObjectiveResult, Plan
 from balancer.electrical.days import Coverage, HighTimes, Run
 from balancer.electrical.durations import Distribution, HoldOut, JudgedPart, Spread
 from balancer.electrical.phasors import PanelCurrents
@@ -15,16 +16,21 @@ from balancer.electrical.scenario_sets import connected_scenarios
 from balancer.electrical.scenarios import ScenarioKind, Scenarios
 from balancer.panel import Arrangement, Installation, Supply, Wire
 from balancer.reports.readings import (
-    averages_text,
     bound_text,
+    date_text,
     high_times_text,
     holdout_text,
-    interval_text,
     loss_text,
     readings_sections,
-    when_text,
 )
-from balancer.reports.readings_answer import NeutralLoss, ReadingsAnswer, ReadingsProof, readings_answer
+from balancer.reports.readings_answer import (
+    NeutralLoss,
+    ReadingsAnswer,
+    ReadingsProof,
+    found_readings,
+    planned_readings,
+    readings_answer,
+)
 from balancer.reports.readings_document import readings_document
 
 Render = Callable[..., str]
@@ -133,8 +139,8 @@ def test_hours_say_how_they_were_scaled(log: ReadingsAnswer, render: Render) -> 
 
 def test_the_days_are_named_with_their_dates(log: ReadingsAnswer, render: Render) -> None:
     text = shown(render, log)
-    assert "The worst day, 2023-01-21" in text
-    assert "An ordinary day, 2023-01-" in text
+    assert "The worst day, Saturday 2023-01-21" in text
+    assert re.search(r"An ordinary day, [A-Z][a-z]+day 2023-01-\d\d", text)
 
 
 def test_as_found_alone_shows_no_column_as_left(
@@ -165,6 +171,24 @@ def test_scenarios_that_are_no_readings_have_no_statistics(installation: Install
     scenarios = connected_scenarios(installation)
     found = PanelCurrents(installation, scenarios).currents(installation.as_found)
     assert readings_answer(installation, scenarios, found, None) is None
+
+
+def test_a_panel_with_nothing_landed_has_no_statistics_as_found(
+    installation: Installation, readings: Scenarios
+) -> None:
+    unlanded = replace(installation, circuits=tuple(replace(c, landing=()) for c in installation.circuits))
+    assert found_readings(unlanded, readings) is None
+    stands = found_readings(installation, readings)
+    assert stands is not None
+    assert stands.as_left is None
+
+
+def test_a_plan_made_on_readings_has_both_columns_and_its_proof(plan: Plan, readings: Scenarios) -> None:
+    assert planned_readings(plan) is None
+    answer = planned_readings(replace(plan, scenarios=readings), held_out(40, 16), 17)
+    assert answer is not None
+    assert None not in (answer.as_found, answer.as_left, answer.holdout)
+    assert answer.proof == ReadingsProof(first=plan.objectives[0], rows=17)
 
 
 def test_energy_is_in_kilowatt_hours_where_the_service_is_known(
@@ -270,26 +294,9 @@ def test_both_parts_are_shown_as_found_and_as_left(log: ReadingsAnswer, render: 
     assert "1,344 intervals before 2023-01-16; 1,344 intervals from 2023-01-16 on" in words(text)
 
 
-@pytest.mark.parametrize(
-    ("interval_s", "expected"),
-    [
-        (1, "1 second"),
-        (10, "10 seconds"),
-        (60, "1 minute"),
-        (900, "15 minutes"),
-        (5400, "90 minutes"),
-        (3600, "1 hour"),
-        (7200, "2 hours"),
-    ],
-)
-def test_intervals_are_named_in_the_unit_that_suits_them(interval_s, expected) -> None:
-    assert interval_text(interval_s) == expected
-    assert f"average over {expected}: shorter moments" in averages_text(interval_s)
-
-
-def test_a_moment_is_told_with_its_day_of_the_week() -> None:
+def test_a_day_is_told_with_its_day_of_the_week() -> None:
     # 1 January 2023 was a Sunday.
-    assert when_text(dt.datetime(2023, 1, 1, 18, 45)) == "Sunday 2023-01-01 18:45"
+    assert date_text(dt.date(2023, 1, 1)) == "Sunday 2023-01-01"
 
 
 @pytest.mark.parametrize(
