@@ -6,6 +6,7 @@ from collections.abc import Callable
 from dataclasses import dataclass
 from enum import StrEnum
 
+from balancer.electrical.durations import HoldOut
 from balancer.electrical.phasors import Peaks
 from balancer.electrical.scenarios import Scenarios
 from balancer.panel import Arrangement, Installation
@@ -96,6 +97,10 @@ class Plan:
     stop: Stop = Stop.NONE
     notes: tuple[str, ...] = ()
     """What the report must say about this plan, such as a leg limit that no arrangement of everything-on can keep."""
+    search_rows: int | None = None
+    """Scenarios that had to be weighed for the first objective, the others cannot raise it; None: not counted."""
+    holdout: HoldOut | None = None
+    """Of readings: what the plan does in those that it was not made on, where some were kept from it."""
 
     @property
     def is_complete(self) -> bool:
@@ -139,6 +144,9 @@ class Progress:
     objective: ObjectiveName
     best: float
     bound: float
+    rows: int = 0
+    rows_that_matter: int | None = None
+    """Of `rows` scenarios those that can still decide the objective; None where they are not counted."""
 
 
 ProgressListener = Callable[[Progress], None]

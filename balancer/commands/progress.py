@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING
 from rich.console import Console
 from rich.status import Status
 
-from balancer.reports.text import format_number
+from balancer.reports.news import planning_news
 
 if TYPE_CHECKING:
     from balancer.arrange.results import Progress
@@ -30,8 +30,7 @@ class ProgressLine:
     def __call__(self, news: Progress) -> None:
         """Take news from the planner, from whatever thread."""
         if self._is_shown:
-            best, bound = format_number(news.best), format_number(news.bound)
-            self._status.update(f"{news.objective}: best so far {best}, no less than {bound} (Ctrl-C: stop and show)")
+            self._status.update(planning_news(news))
 
     def __enter__(self) -> ProgressLine:
         """Start waiting."""

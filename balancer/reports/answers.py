@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from balancer.arrange.clamp import ClampReading, clamp_check
 from balancer.arrange.explain import PeakExplanation, explain_peak
@@ -12,6 +12,7 @@ from balancer.arrange.work import Work
 from balancer.electrical.phasors import PanelCurrents, Peaks
 from balancer.electrical.scenarios import Scenarios, averages_only
 from balancer.panel import Arrangement, Installation
+from balancer.reports.readings_answer import ReadingsAnswer, found_readings, planned_readings
 from balancer.reports.voltages import PanelVoltages, panel_voltages
 from balancer.rules import Finding, check_installation, errors_of, new_errors
 
@@ -29,6 +30,8 @@ class AsFoundAnswer:
     """Peak neutral [A] of the hourly or interval averages alone; None where there are none beside other scenarios."""
     voltages: PanelVoltages | None = None
     """When the neutral peaks; None where the panel file gives no impedances."""
+    readings: ReadingsAnswer | None = None
+    """What a log tells beyond the peaks; None where the scenarios are no readings."""
 
     @property
     def has_errors(self) -> bool:
@@ -53,6 +56,8 @@ class PlanAnswer:
     """As left, see `AsFoundAnswer`."""
     voltages: PanelVoltages | None = None
     """As left, see `AsFoundAnswer`."""
+    readings: ReadingsAnswer | None = None
+    """What a log tells beyond the peaks, as found and as left; None where the scenarios are no readings."""
 
     @property
     def has_errors(self) -> bool:
@@ -62,6 +67,10 @@ class PlanAnswer:
 
 def as_found_answer(installation: Installation, scenarios: Scenarios) -> AsFoundAnswer:
     """Work out what the legs and the neutral carry today."""
+    return replace(_peaks_as_found(installation, scenarios), readings=found_readings(installation, scenarios))
+
+
+def _peaks_as_found(installation: Installation, scenarios: Scenarios) -> AsFoundAnswer:
     findings = check_installation(installation)
     found = installation.as_found
     if not found:
@@ -83,7 +92,7 @@ def as_found_answer(installation: Installation, scenarios: Scenarios) -> AsFound
 
 def plan_answer(plan: Plan, fewer: Tradeoff | None = None) -> PlanAnswer:
     """Gather the work, the clamp check and the findings of a plan."""
-    before = as_found_answer(plan.installation, plan.scenarios)
+    before = _peaks_as_found(plan.installation, plan.scenarios)
     findings = check_installation(plan.installation, plan.as_left)
     explanation = explain_peak(PanelCurrents(plan.installation, plan.scenarios), plan.as_left, plan.options)
     return PlanAnswer(
@@ -97,6 +106,7 @@ def plan_answer(plan: Plan, fewer: Tradeoff | None = None) -> PlanAnswer:
         fewer=fewer,
         averages_peak_a=_averages_peak_a(plan.installation, plan.scenarios, plan.as_left),
         voltages=panel_voltages(plan.installation, plan.scenarios, plan.as_left, explanation.scenario),
+        readings=planned_readings(plan),
     )
 
 

@@ -15,6 +15,7 @@ from balancer.electrical.scenarios import Scenarios
 from balancer.errors import Problem
 from balancer.panel import Arrangement, Circuit, Installation, Landing, format_landing
 from balancer.reports.answers import AsFoundAnswer, PlanAnswer
+from balancer.reports.readings_document import readings_document
 from balancer.reports.voltages import PanelVoltages
 from balancer.rules import Finding
 
@@ -47,6 +48,7 @@ def plan_document(answer: PlanAnswer) -> Document:
         **_work(answer.work),
         "removed_spares": list(plan.removed_spares),
         "notes": [*plan.notes, *_notes(plan.installation, plan.scenarios)],
+        "readings": None if answer.readings is None else readings_document(answer.readings),
     }
 
 
@@ -66,6 +68,7 @@ def as_found_document(answer: AsFoundAnswer) -> Document:
         "peak": None if answer.explanation is None else _explanation(answer.explanation),
         "voltages": {"as_found": _voltages(answer.voltages), "as_left": None},
         "notes": _notes(answer.installation, answer.scenarios),
+        "readings": None if answer.readings is None else readings_document(answer.readings),
     }
 
 

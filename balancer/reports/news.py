@@ -13,12 +13,14 @@ def reading_news(rows: int) -> str:
     return f"Reading the log: {rows:,} rows"
 
 
-def planning_news(progress: Progress, rows: int = 0, rows_that_matter: int | None = None) -> str:
+def planning_news(progress: Progress) -> str:
     """Say how far an objective is closed and, of readings, how many rows can still decide it."""
     gap = max(0.0, progress.best - progress.bound)
     best, bound, short_of = (_figure(progress.objective, value) for value in (progress.best, progress.bound, gap))
-    matter = "" if rows_that_matter is None else f"; {rows_that_matter:,} of {rows:,} rows matter"
-    return f"{progress.objective}: best {best}, no less than {bound}, gap {short_of}{matter} {STOP_HINT}"
+    matter = ""
+    if progress.rows_that_matter is not None:
+        matter = f"; {progress.rows_that_matter:,} of {progress.rows:,} rows matter"
+    return f"{progress.objective}: best so far {best}, no less than {bound}, gap {short_of}{matter} {STOP_HINT}"
 
 
 def _figure(objective: ObjectiveName, value: float) -> str:

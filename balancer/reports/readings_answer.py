@@ -144,25 +144,15 @@ def found_readings(installation: Installation, scenarios: Scenarios) -> Readings
     return readings_answer(installation, scenarios, found, None)
 
 
-def planned_readings(plan: Plan, holdout: HoldOut | None = None, rows: int | None = None) -> ReadingsAnswer | None:
-    """Gather the statistics of a log for a plan; None where it was not made on readings.
-
-    Parameters
-    ----------
-    plan
-        The plan; its scenarios are the log.
-    holdout
-        How it did on readings that it never saw, where some were kept from it.
-    rows
-        How many intervals had to be weighed; None where they were not counted.
-    """
+def planned_readings(plan: Plan) -> ReadingsAnswer | None:
+    """Gather the statistics of a log for a plan; None where it was not made on readings."""
     if plan.scenarios.times is None:
         return None
     currents = PanelCurrents(plan.installation, plan.scenarios)
     found = currents.currents(plan.as_found) if plan.as_found else None
     answer = readings_answer(plan.installation, plan.scenarios, found, currents.currents(plan.as_left))
-    proof = ReadingsProof(first=plan.objectives[0], rows=rows)
-    return None if answer is None else replace(answer, holdout=holdout, proof=proof)
+    proof = ReadingsProof(first=plan.objectives[0], rows=plan.search_rows)
+    return None if answer is None else replace(answer, holdout=plan.holdout, proof=proof)
 
 
 def _levels(found: LegCurrents | None, left: LegCurrents | None, governing: LegCurrents) -> Iterator[Level]:

@@ -25,6 +25,8 @@ from balancer.reports.figures import (
     when_lines,
 )
 from balancer.reports.findings import findings_count, findings_list
+from balancer.reports.readings import bound_text, readings_sections
+from balancer.reports.readings_answer import ReadingsAnswer
 from balancer.reports.text import bullets, format_amps, list_of, numbered, paragraph, section, visible
 from balancer.reports.verdict import flat_text, proof_notes, proof_table, tradeoff_notes, tradeoff_table, verdict
 from balancer.reports.voltages import PanelVoltages, voltages_block
@@ -68,6 +70,7 @@ def as_found_report(answer: AsFoundAnswer) -> Group:
         *_figures("Figures", [PeaksColumn("as found", answer.peaks, answer.averages_peak_a)], installation),
         *_peak(when_lines(answer.scenarios, "As found", answer.peaks), answer.explanation),
         *_voltages([("as found", answer.voltages)]),
+        *_readings(answer.readings),
         section("What the figures rest on", bullets(basis_lines(installation, answer.scenarios))),
         section("The panel as found", PanelFace(installation, installation.as_found), *_face_legend("")),
         section("Findings", paragraph(f"{findings_count(answer.findings).capitalize()}.{_see_check(answer)}")),
@@ -164,11 +167,23 @@ def _reasons(answer: PlanAnswer) -> Iterator[RenderableType]:
     yield from _figures("As found and as left" if len(columns) > 1 else "As left", columns, plan.installation)
     held_up = paragraph(f"What holds it up: {answer.explanation.sentence}")
     yield from _peak(when, answer.explanation, held_up)
-    yield section("How good it is", proof_table(plan.objectives), Text(""), bullets(proof_notes(plan)))
+    yield section("How good it is", proof_table(plan.objectives), Text(""), bullets(_proof_notes(answer)))
     if answer.fewer is not None and (answer.fewer.points or answer.fewer.refused):
         yield section("What fewer landings would give", _tradeoff(answer.fewer, plan.options.aim, answer.cured))
     yield from _voltages([("as found", before.voltages), ("as left", answer.voltages)])
+    yield from _readings(answer.readings)
     yield section("What the figures rest on", bullets(basis_lines(plan.installation, plan.scenarios)))
+
+
+def _readings(readings: ReadingsAnswer | None) -> Iterator[RenderableType]:
+    if readings is not None:
+        yield from readings_sections(readings)
+
+
+def _proof_notes(answer: PlanAnswer) -> list[str]:
+    proof = None if answer.readings is None else answer.readings.proof
+    on_which_rows = [] if proof is None else [bound_text(proof, len(answer.plan.scenarios))]
+    return [*on_which_rows, *proof_notes(answer.plan)]
 
 
 def _work(answer: PlanAnswer) -> Iterator[RenderableType]:

@@ -15,6 +15,8 @@ from balancer.electrical.phasors import PanelCurrents
 from balancer.electrical.scenario_sets import connected_scenarios
 from balancer.electrical.scenarios import ScenarioKind, Scenarios
 from balancer.panel import Arrangement, Installation, Supply, Wire
+from balancer.reports.answers import AsFoundAnswer, PlanAnswer, as_found_answer, plan_answer
+from balancer.reports.document import as_found_document, plan_document
 from balancer.reports.readings import (
     bound_text,
     date_text,
@@ -32,6 +34,7 @@ from balancer.reports.readings_answer import (
     readings_answer,
 )
 from balancer.reports.readings_document import readings_document
+from balancer.reports.terminal import as_found_report, plan_report
 
 Render = Callable[..., str]
 
@@ -185,7 +188,7 @@ def test_a_panel_with_nothing_landed_has_no_statistics_as_found(
 
 def test_a_plan_made_on_readings_has_both_columns_and_its_proof(plan: Plan, readings: Scenarios) -> None:
     assert planned_readings(plan) is None
-    answer = planned_readings(replace(plan, scenarios=readings), held_out(40, 16), 17)
+    answer = planned_readings(replace(plan, scenarios=readings, holdout=held_out(40, 16), search_rows=17))
     assert answer is not None
     assert None not in (answer.as_found, answer.as_left, answer.holdout)
     assert answer.proof == ReadingsProof(first=plan.objectives[0], rows=17)
@@ -368,3 +371,27 @@ def test_document_has_null_for_what_is_not_known(installation: Installation, rea
     assert document["days"]["worst"]["as_left"] is None
     assert document["days"]["worst"]["as_found"]["neutral"][0] is None
     assert document["neutral_loss"] == {"ratio": None, "as_found_kwh": None, "as_left_kwh": None}
+
+
+def test_reports_and_documents_show_a_log_only_where_there_is_one(
+    answer: PlanAnswer, before: AsFoundAnswer, log: ReadingsAnswer, render: Render
+) -> None:
+    with_log = replace(answer, readings=replace(log, proof=proof()))
+    text = render(plan_report(with_log))
+    assert text.index("WHAT MAKES THE PEAK") < text.index("THE DAY, HOUR BY HOUR") < text.index("WHAT THE FIGURES REST")
+    assert "proven by a complete search" in words(text[text.index("HOW GOOD IT IS") :])
+    assert "THE DAY" not in render(plan_report(answer))
+    assert "THE DAY" in render(as_found_report(replace(before, readings=log)))
+    assert plan_document(with_log)["readings"]["intervals"] == DAYS * 96
+    assert plan_document(answer)["readings"] is None
+    assert as_found_document(replace(before, readings=log))["readings"]["intervals"] == DAYS * 96
+
+
+def test_answers_gather_the_log(plan: Plan, installation: Installation, readings: Scenarios) -> None:
+    found = as_found_answer(installation, readings).readings
+    planned = plan_answer(replace(plan, scenarios=readings)).readings
+    assert found is not None
+    assert planned is not None
+    assert found.as_found == planned.as_found
+    assert planned.as_left is not None
+    assert as_found_answer(installation, connected_scenarios(installation)).readings is None
