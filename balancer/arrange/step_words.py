@@ -111,7 +111,7 @@ def _new_text(step: Step, circuit: Circuit) -> str:
 
 def went_along_text(carrier: str) -> str:
     """Say that a circuit is where it belongs already."""
-    return f"Nothing more to do: it went along with {carrier}, on the same breaker."
+    return f"It went along with {carrier}: its conductor stays on the same breaker."
 
 
 @dataclass(frozen=True)

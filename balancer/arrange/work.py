@@ -111,8 +111,8 @@ class Part:
 
 PRE_MOVE_TEST = (
     "With a load on the circuit and the others left running, clamp its hot and the neutral of the same cable together. "
-    "0 A: the neutral is its own. Any other reading: the neutral is shared or crossed; leave the circuit where it is "
-    "until its partner is found. A partner that is idle does not show."
+    "0 A: the neutral is its own. Any other reading: the neutral is shared or crossed; leave the circuit where it is, "
+    "find its partner, enter both in shared_neutral and plan again. A partner that is idle does not show."
 )
 """How every circuit is tested of which nobody knows whether it shares its neutral."""
 

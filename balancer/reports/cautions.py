@@ -8,7 +8,8 @@ LIVE_WORK = "The panel is live and open: only a qualified person, protected agai
 BEFORE = (
     "Shut off and lock out every source that can feed this panel: utility, solar, battery, generator. A generator or "
     "a battery may start by itself when the main opens: disable its automatic start first.",
-    "Prove the bus dead with a meter that you have just tried on a live part, leg to leg and each leg to neutral.",
+    "Prove the bus dead, leg to leg and each leg to neutral and to ground, with a meter that you try on a live part "
+    "just before and again just after.",
     "The line-side lugs of the main stay live. Only the utility can make them dead.",
     "The steps below are for a dead panel. Label every conductor before it leaves its terminal.",
 )

@@ -31,7 +31,7 @@ from balancer.reports.text import bullets, format_amps, list_of, numbered, parag
 from balancer.reports.verdict import flat_text, proof_notes, proof_table, tradeoff_notes, tradeoff_table, verdict
 from balancer.reports.voltages import PanelVoltages, voltages_block
 from balancer.reports.work import clamp_table, part_list, pre_move_list, step_list
-from balancer.rules import Finding, check_installation, errors_of, new_errors
+from balancer.rules import CODE_NOTE, Finding, check_installation, errors_of, new_errors
 
 CLAMP_INTRO = f"{LIVE_WORK} Everything else off. Switch these on one after the other; the meter must read, in amps:"
 
@@ -91,7 +91,7 @@ def check_report(answer: AsFoundAnswer) -> Group:
     if answer.findings:
         blocks += [Text(""), findings_list(answer.findings)]
     blocks += [Text(""), bullets(answer.installation.notices)] if answer.installation.notices else []
-    blocks += [Text(""), paragraph(AFTER[-1])]
+    blocks += [Text(""), paragraph(CODE_NOTE)]
     return Group(*blocks)
 
 
@@ -228,4 +228,6 @@ def _after(answer: PlanAnswer) -> Iterator[RenderableType]:
         yield section("Cured by this plan", findings_list(answer.cured))
     if answer.findings:
         yield section("Findings as left", findings_list(answer.findings))
+    if answer.cured or answer.findings:
+        yield from (Text(""), paragraph(CODE_NOTE))
     yield section("Afterwards", bullets(AFTER if answer.work.steps else AFTER_NO_WORK))

@@ -104,7 +104,7 @@ def test_a_tandem_body_moves_whole(steps, circuit):
     found = steps(*halves, circuit("Z", "4"), X="4a", Y="4b", Z="2")
     assert all(step.how is How.MOVE_BREAKER and step.with_breaker for step in found.values())
     assert found["X"].goes_along[0] == "Y, on the same breaker body, goes along."
-    assert found["Y"].action == "Nothing more to do: it went along with X, on the same breaker."
+    assert found["Y"].action == "It went along with X: its conductor stays on the same breaker."
     assert found["Y"].goes_along == ("CT on it, if any: now leg B.",)
 
 
@@ -247,7 +247,7 @@ def test_two_conductors_under_one_breaker_stay_together(work, circuit):
     plan = work(circuit("X", "1", tied="t"), circuit("Y", "1", tied="t"), X="5", Y="5")
     assert [(step.circuit, step.with_breaker) for step in plan.steps] == [("X", True), ("Y", True)]
     assert plan.steps[0].goes_along == ("Y, on the same breaker body, goes along.",)
-    assert plan.steps[1].action.endswith("it went along with X, on the same breaker.")
+    assert plan.steps[1].action.startswith("It went along with X")
     assert plan.steps[1].goes_along == ()
 
 

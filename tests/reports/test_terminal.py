@@ -165,6 +165,13 @@ def test_check_report_shows_every_finding_in_full(before: AsFoundAnswer, render:
     assert "NEC 2023, 240.4(D)" in text
 
 
+def test_findings_come_with_who_decides(answer: PlanAnswer, before: AsFoundAnswer, render: Render) -> None:
+    for report in (check_report(before), plan_report(answer)):
+        assert "what is marked as from memory was not read in print" in " ".join(render(report).split())
+    none = replace(answer, findings=(), cured=())
+    assert "from memory was not read" not in " ".join(render(plan_report(none)).split())
+
+
 def test_as_found_report_of_an_empty_panel_says_so(before: AsFoundAnswer, render: Render) -> None:
     empty = replace(before, peaks=None, explanation=None)
     assert "No circuit is landed yet" in render(as_found_report(empty))
