@@ -14,8 +14,8 @@ ROWS = 9
 """Heights that a chart tells apart above zero."""
 
 CHART_LEGEND = (
-    "Highest reading of each hour, in amps by hour of the day. A, B: legs. N over colons: neutral. "
-    "=: both legs at one height. a, b: that leg and the neutral. *: all three."
+    "Amps by hour of the day: the highest reading of each hour, every mark on its own, not all at one moment. "
+    "A, B: legs. N over colons: neutral. =: both legs at one height. a, b: that leg and the neutral. *: all three."
 )
 
 _NOTHING, _UNDER_NEUTRAL = " ", ":"

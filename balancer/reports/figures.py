@@ -18,7 +18,7 @@ _KINDS = {
     ScenarioKind.CONNECTED: "connected loads, everything on (planning assumptions)",
     ScenarioKind.PROFILES: "use profiles (planning assumptions)",
     ScenarioKind.SCENARIOS: "the scenario file, shares of full load as given there",
-    ScenarioKind.READINGS: "readings, measured intervals",
+    ScenarioKind.READINGS: "readings, measured",
 }
 
 _SYSTEMS = {
@@ -35,9 +35,10 @@ def basis_lines(installation: Installation, scenarios: Scenarios) -> list[str]:
     system = _SYSTEMS[supply.system]
     if supply.system is SupplySystem.WYE and supply.leading_leg is None:
         system += "; rotation not known, the worse of both counts"
+    noun = "interval" if scenarios.kind is ScenarioKind.READINGS else "scenario"
     return [
         f"Supply: {system}.",
-        f"Loads: {_KINDS[scenarios.kind]}; {count_of(len(scenarios), 'scenario')}.{averages}",
+        f"Loads: {_KINDS[scenarios.kind]}; {count_of(len(scenarios), noun)}.{averages}",
         *scenarios.notes,
         *installation.notices,
     ]

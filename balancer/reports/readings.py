@@ -13,7 +13,7 @@ from balancer.electrical.days import HOURS_A_DAY, Coverage, HighTimes
 from balancer.electrical.durations import Distribution, HoldOut, JudgedPart, Spread
 from balancer.reports.day_chart import CHART_LEGEND, day_chart
 from balancer.reports.readings_answer import QUANTITIES, ChartedDay, Level, NeutralLoss, ReadingsAnswer, ReadingsProof
-from balancer.reports.text import figures_table, format_amps, format_number, paragraph, section
+from balancer.reports.text import bullets, figures_table, format_amps, format_number, paragraph, section
 
 _DAY_NAMES = {"ordinary": "An ordinary day", "worst": "The worst day"}
 _WEEKDAYS = ("Monday", "Tuesday", "Wednesday", "Thursday", "Friday", "Saturday", "Sunday")
@@ -30,9 +30,7 @@ _TELLS_APART_A = 0.05
 
 def readings_sections(answer: ReadingsAnswer) -> Iterator[RenderableType]:
     """Show how long the panel carries what, the hours above a few levels, two days, and whether the plan holds."""
-    yield section(
-        "How long it carries what", *map(paragraph, answer.warnings), spreads_table(answer), *_beside_spreads(answer)
-    )
+    yield section("How long it carries what", spreads_table(answer), Text(""), _beside_spreads(answer))
     if answer.levels:
         yield section("Hours a year above", levels_table(answer.levels), paragraph(scaled_text(answer.coverage)))
     yield section("The day, hour by hour", *_charts(answer.days), Text(""), paragraph(CHART_LEGEND))
@@ -76,9 +74,9 @@ def _spread_cells(spread: Spread) -> tuple[str, ...]:
     return tuple(map(format_number, (spread.median_a, spread.p95_a, spread.p99_a, spread.peak_a)))
 
 
-def _beside_spreads(answer: ReadingsAnswer) -> Iterator[RenderableType]:
+def _beside_spreads(answer: ReadingsAnswer) -> Table:
     high = "" if answer.high_times is None else high_times_text(answer.high_times)
-    yield from map(paragraph, filter(None, (high, loss_text(answer.neutral_loss))))
+    return bullets(filter(None, (*answer.warnings, high, loss_text(answer.neutral_loss))))
 
 
 def loss_text(loss: NeutralLoss) -> str:

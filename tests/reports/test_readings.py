@@ -17,6 +17,7 @@ from balancer.electrical.scenarios import ScenarioKind, Scenarios
 from balancer.panel import Arrangement, Installation, Supply, Wire
 from balancer.reports.answers import AsFoundAnswer, PlanAnswer, as_found_answer, plan_answer
 from balancer.reports.document import as_found_document, plan_document
+from balancer.reports.figures import basis_lines
 from balancer.reports.readings import (
     bound_text,
     date_text,
@@ -395,3 +396,8 @@ def test_answers_gather_the_log(plan: Plan, installation: Installation, readings
     assert found.as_found == planned.as_found
     assert planned.as_left is not None
     assert as_found_answer(installation, connected_scenarios(installation)).readings is None
+
+
+def test_scenarios_of_a_log_are_called_intervals(installation: Installation, readings: Scenarios) -> None:
+    assert "readings, measured; 2688 intervals." in " ".join(basis_lines(installation, readings))
+    assert "1 scenario." in " ".join(basis_lines(installation, connected_scenarios(installation)))
