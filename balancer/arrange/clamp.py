@@ -6,7 +6,7 @@ Nobody can bring a peak about on demand; a few known loads, alone in the panel, 
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -143,17 +143,32 @@ def _reading(
         neutral_a=(on * [load.neutral_a for load in loads])[np.newaxis],
         line_a=(on * [load.line_a for load in loads])[np.newaxis],
     )
-    currents = PanelCurrents(installation, scenarios).currents(as_left)
+    possible = [PanelCurrents(each, scenarios).currents(as_left) for each in _rotations(installation)]
+    readings_a = np.array([[c.leg_a[0], c.leg_b[0], c.neutral[0]] for c in possible])
+    middle_a, spread_a = (readings_a.max(axis=0) + readings_a.min(axis=0)) / 2, np.ptp(readings_a, axis=0) / 2
+    leg_a_a, leg_b_a, neutral_a = map(float, middle_a)
     return ClampReading(
         switch_on=labels[-1],
         circuits_on=labels,
-        leg_a_a=float(currents.leg_a[0]),
-        leg_b_a=float(currents.leg_b[0]),
-        neutral_a=float(currents.neutral[0]),
-        tolerance_a=_tolerance_a(circuits),
+        leg_a_a=leg_a_a,
+        leg_b_a=leg_b_a,
+        neutral_a=neutral_a,
+        tolerance_a=_tolerance_a(circuits) + float(spread_a.max()),
         is_assumed=any(circuit.load.is_assumed for circuit in circuits),
-        text=_text(circuits[-1], currents, before),
+        text=_text(circuits[-1], possible[0], before),
     )
+
+
+def _rotations(installation: Installation) -> tuple[Installation, ...]:
+    """Give the installation with either leg of a wye leading where that is not known: the meter shows one of the two.
+
+    A plan takes the worse of both; a reading that is neither too high nor too low lies between them.
+    """
+    supply = installation.panel.supply
+    if supply.system is not SupplySystem.WYE or supply.leading_leg is not None:
+        return (installation,)
+    supplies = (replace(supply, leading_leg=leg) for leg in Leg)
+    return tuple(replace(installation, panel=replace(installation.panel, supply=each)) for each in supplies)
 
 
 def _tolerance_a(circuits: Sequence[Circuit]) -> float:

@@ -102,3 +102,13 @@ def test_legs_in_phase_add_up_in_the_neutral(installation, circuit):
     readings = clamp_check(wall, wall.as_found)
     assert [r.neutral_a for r in readings] == pytest.approx([12.0, 21.0])
     assert readings[1].text.endswith("the neutral rises.")
+
+
+def test_a_rotation_not_known_widens_the_reading_to_hold_both(installation, circuit):
+    # Derived: |15 A at pf 0.8 + 5 A| across 120 degrees is 10.6 or 16.4 A as one leg or the other leads.
+    lagging = Load(neutral_a=15.0, neutral_pf=PowerFactor(0.8))
+    wall = installation(circuit("P", "1", load=lagging), circuit("Q", "3", amps=5.0), system="120/208")
+    both = clamp_check(wall, wall.as_found)[1]
+    for neutral_a in (10.586, 16.369):
+        assert abs(both.neutral_a - neutral_a) <= both.tolerance_a
+    assert both.tolerance_a < 4.0
