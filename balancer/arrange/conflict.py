@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Sequence
 from dataclasses import dataclass
 
@@ -42,7 +43,10 @@ def explain_no_seats(installation: Installation, options: Options, clock: Clock)
     constraints = _constraints(installation, options)
     if not _fits(installation, options, [], clock):
         return InfeasibleError(
-            ["the circuits do not fit: two poles and shared-neutral pairs need adjacent spaces on opposite legs"],
+            [
+                "the circuits do not fit: two poles and shared-neutral pairs need adjacent spaces on opposite legs, and"
+                " tied circuits spaces one below the other"
+            ],
             ["free adjacent spaces, or use a larger panel or a subpanel"],
         )
     conflict = _smallest_conflict(installation, options, constraints, clock)
@@ -111,7 +115,7 @@ def _constraints(installation: Installation, options: Options) -> list[_Constrai
         if circuit.slack_in is not None and circuit.landing and not options.splice:
             text = f'the conductor of "{circuit.label}" reaches {circuit.slack_in:g} in from space'
             text = f"{text} {format_landing(circuit.landing)}"
-            if circuit.slack_in < 1000:
+            if math.isfinite(circuit.slack_in):
                 found.append(_Constraint(Hold.REACH, circuit.label, text, "allow splices with --splice"))
     if options.max_landings is not None:
         text = f"at most {options.max_landings} landings may change"

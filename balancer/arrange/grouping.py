@@ -15,14 +15,14 @@ def canonical_key(circuits: Sequence[Circuit]) -> tuple[int, str, str]:
     return (first.space, first.half, min(circuit.label for circuit in circuits))
 
 
-def is_pair_broken(panel: Panel, first: Circuit, second: Circuit) -> bool:
+def _is_pair_broken(panel: Panel, first: Circuit, second: Circuit) -> bool:
     """Whether a shared-neutral pair has both hots on one leg as found."""
     if not (first.is_landed and second.is_landed):
         return False
     return panel.leg(first.landing[0].space) is panel.leg(second.landing[0].space)
 
 
-def can_mend(pair: Sequence[Circuit]) -> bool:
+def _can_mend(pair: Sequence[Circuit]) -> bool:
     """Whether a pair found on one leg can be put right: one of the two may move, to beside a full-width breaker."""
     fixed = [circuit for circuit in pair if circuit.is_fixed]
     return not fixed or (len(fixed) == 1 and not fixed[0].landing[0].half)
@@ -42,7 +42,7 @@ def group_circuits(installation: Installation) -> list[tuple[Circuit, ...]]:
         for member in members[1:]:
             parent[root(member)] = root(members[0])
 
-    pulled_out = _pulled_out_of_bodies(installation)
+    pulled_out = circuits_to_mend(installation)
     by_key: dict[tuple[str, object], list[int]] = {}
     for index, circuit in enumerate(circuits):
         if circuit.label not in pulled_out:
@@ -60,15 +60,15 @@ def group_circuits(installation: Installation) -> list[tuple[Circuit, ...]]:
     return [tuple(sorted(group, key=lambda c: canonical_key((c,)))) for group in groups.values()]
 
 
-def _pulled_out_of_bodies(installation: Installation) -> frozenset[str]:
-    """Give labels of pairs found on one leg: mending them takes them out of the body or terminal they share."""
+def circuits_to_mend(installation: Installation) -> frozenset[str]:
+    """Give labels of pairs found on one leg that can be put right: out of the body or terminal that they share."""
     if installation.panel.supply.system is SupplySystem.IN_PHASE:
         return frozenset()
     pairs = shared_neutral_pairs(installation)
     return frozenset(
         circuit.label
         for pair in pairs
-        if is_pair_broken(installation.panel, *pair) and can_mend(pair)
+        if _is_pair_broken(installation.panel, *pair) and _can_mend(pair)
         for circuit in pair
     )
 

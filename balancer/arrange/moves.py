@@ -56,10 +56,11 @@ def beside_moves(installation: Installation, body: Arrangement, newcomers: Seque
     """Stack circuits without a place directly above or below a body that has one."""
     panel = installation.panel
     spaces = [panel.by_number[t.space] for landing in body.values() for t in landing]
-    top = min(spaces, key=lambda space: space.row)
-    bottom = max(spaces, key=lambda space: space.row)
     height = sum(circuit.poles for circuit in newcomers)
-    starts = [panel.at(bottom.column, bottom.row + 1), panel.at(top.column, top.row - height)]
+    starts = []
+    for column in dict.fromkeys(space.column for space in spaces):
+        rows = [space.row for space in spaces if space.column == column]
+        starts += [panel.at(column, max(rows) + 1), panel.at(column, min(rows) - height)]
     for order in _orders(newcomers):
         for start in starts:
             if start is not None:

@@ -7,6 +7,7 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
+from balancer.arrange.canonical import in_canonical_order
 from balancer.arrange.clock import Clock
 from balancer.arrange.conflict import explain_no_seats
 from balancer.arrange.incumbent import Heuristic
@@ -94,11 +95,12 @@ class Planner:
 
     def __post_init__(self) -> None:
         self._currents = PanelCurrents(self.installation, self.scenarios)
-        units = build_units(self.installation, self.options, idle=self._idle())
+        self._ordered, scenarios = in_canonical_order(self.installation, self.scenarios)
+        units = build_units(self._ordered, self.options, idle=self._idle())
         if any(not unit.placements and not unit.is_optional for unit in units):
-            raise explain_no_seats(self.installation, self.options, self.clock)
+            raise explain_no_seats(self._ordered, self.options, self.clock)
         units = tuple(unit for unit in units if unit.placements)
-        self.problem = build_leg_problem(self.installation, self.scenarios, units)
+        self.problem = build_leg_problem(self._ordered, scenarios, units)
         self._seater = Seater(self.installation.panel, units, self.options.max_landings, self.clock)
         self._counters = self._all_counters()
         self._caps, self._notes = self._leg_limit()
@@ -154,11 +156,11 @@ class Planner:
         reference = np.zeros(len(self.problem.choices), dtype=np.int8)
         if self.start is None:
             return [reference]
-        landed = {frozenset(self.start.items())}
+        start = self.start.items()
         signs = []
         for unit in self.problem.units:
-            matching = [p.signs for p in unit.placements if all(item in next(iter(landed)) for item in p.landings)]
-            signs.append(matching[0] if matching else unit.placements[0].signs)
+            matching = (placement.signs for placement in unit.placements if start >= set(placement.landings))
+            signs.append(next(matching, unit.placements[0].signs))
         return [self.problem.answer_of(signs), reference]
 
     def _is_valid(self, answer: Answer) -> bool:
@@ -190,7 +192,7 @@ class Planner:
         """Tell a leg limit, alone or with the cap on landings, from a lack of seats."""
         most = self.options.max_landings
         if not self._caps or not self._has_answer(most, keeps_main=False):
-            return explain_no_seats(self.installation, self.options, self.clock)
+            return explain_no_seats(self._ordered, self.options, self.clock)
         main_a = self.installation.panel.main_a or 0.0
         above = f"some scenario puts more than the {main_a:g} A main on a leg"
         if most is not None and self._has_answer(None, keeps_main=True):

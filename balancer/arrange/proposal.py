@@ -5,7 +5,7 @@ All is worked out anew from the installation and the landings, so that a fault o
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Mapping
+from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from functools import cached_property
 
@@ -96,16 +96,25 @@ class Proposal:
 
     @cached_property
     def to_mend(self) -> frozenset[str]:
-        """Labels of pairs found on one leg that may be moved: mending takes them out of what they share."""
+        """Labels of pairs found on one leg that may be put right: mending takes them out of what they share.
+
+        One of the two may be fixed, where a full-width breaker fits beside it.
+        """
         wrong = [
             pair
             for pair in self.pairs
             if self.has_opposite_legs
             and all(circuit.is_landed for circuit in pair)
             and len(self.legs(pair, self.installation.as_found)) == 1
-            and not any(stays_put(circuit) for circuit in pair)
+            and _leaves_room_to_mend([circuit for circuit in pair if stays_put(circuit)])
         ]
         return frozenset(circuit.label for pair in wrong for circuit in pair)
+
+    @cached_property
+    def restacked(self) -> frozenset[str]:
+        """Labels of pairs to mend and of new circuits, with all that hangs on them: they are put together anew."""
+        anew = [c for c in self.installation.circuits if not c.is_landed or c.label in self.to_mend]
+        return self._hanging_on(anew, self.installation.circuits)
 
     @cached_property
     def immovable(self) -> frozenset[str]:
@@ -117,9 +126,11 @@ class Proposal:
         return self.hanging_on(held)
 
     def hanging_on(self, circuits: Iterable[Circuit]) -> frozenset[str]:
-        """Labels of some circuits and of all that hangs on them by a body, a tie or a shared neutral."""
-        landed = [circuit for circuit in self.installation.circuits if circuit.is_landed]
-        joined = groups_by(landed, lambda c: c.tied) + groups_by(landed, lambda c: c.shared_neutral)
+        """Labels of some circuits and of all landed ones that hang on them by a body, a tie or a shared neutral."""
+        return self._hanging_on(circuits, [circuit for circuit in self.installation.circuits if circuit.is_landed])
+
+    def _hanging_on(self, circuits: Iterable[Circuit], among: Sequence[Circuit]) -> frozenset[str]:
+        joined = groups_by(among, lambda c: c.tied) + groups_by(among, lambda c: c.shared_neutral)
         groups = [body.circuits for body in self.bodies_found]
         groups += [tuple(circuit.label for circuit in group) for group in joined]
         found = {circuit.label for circuit in circuits}
@@ -180,3 +191,8 @@ class Proposal:
 def stays_put(circuit: Circuit) -> bool:
     """Whether the inventory says that it stays where it is landed."""
     return circuit.is_landed and (circuit.is_fixed or circuit.role.is_device)
+
+
+def _leaves_room_to_mend(held: Sequence[Circuit]) -> bool:
+    """Whether a pair of which these stay put can be put right."""
+    return not held or (len(held) == 1 and not any(terminal.half for terminal in held[0].landing))

@@ -10,7 +10,7 @@ from collections.abc import Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass, field
 from enum import StrEnum
 
-from balancer.arrange.grouping import can_mend, canonical_key, group_circuits, is_pair_broken, shared_neutral_pairs
+from balancer.arrange.grouping import canonical_key, circuits_to_mend, group_circuits, shared_neutral_pairs
 from balancer.arrange.moves import beside_moves, pair_moves, rigid_moves, single_moves, stacked_moves
 from balancer.arrange.placements import (
     Part,
@@ -87,6 +87,7 @@ class _Seating:
         # Nobody said where half-width breakers fit: only where one is already is it known to.
         self._tandem_spaces = panel.tandem_spaces if panel.tandem_spaces is not None else frozenset(halves)
         self._pairs = shared_neutral_pairs(self.installation)
+        self._to_mend = circuits_to_mend(self.installation)
 
     @property
     def panel(self) -> Panel:
@@ -115,7 +116,7 @@ class _Seating:
 
     def _is_half_fixed_pair(self, group: Sequence[Circuit]) -> bool:
         """Tell a pair on one leg of which one may move: it goes beside the other."""
-        return self._must_mend(group) and self._is_flexible_pair(group) and can_mend(group)
+        return self._must_mend(group) and self._is_flexible_pair(group)
 
     def _is_beyond_mending(self, group: Sequence[Circuit]) -> bool:
         """Three hots on one neutral stay wrong wherever they go; moving them would only hide it."""
@@ -150,25 +151,28 @@ class _Seating:
     def _new_places(self, group: Sequence[Circuit]) -> Iterator[Arrangement]:
         """Seat circuits of which some have no place yet, or must leave theirs, together.
 
-        Landed bodies, double taps and two-pole breakers keep their shape, and the newcomers stack beside them.
+        Bodies, double taps and two-pole breakers that stay whole keep their shape, and the others stack beside them.
         """
-        landed = [circuit for circuit in group if circuit.is_landed]
-        spaces = [t.space for c in landed for t in c.landing]
-        is_plain = len(spaces) == len(set(spaces)) and not any(t.half for c in landed for t in c.landing)
-        if all(c.poles == 1 for c in landed) and (is_plain or self._must_mend(group)):
+        kept = [circuit for circuit in group if not self._needs_place(circuit)]
+        spaces = [t.space for c in kept for t in c.landing]
+        is_plain = len(spaces) == len(set(spaces)) and not any(t.half for c in kept for t in c.landing)
+        if is_plain and all(c.poles == 1 for c in kept):
             yield from stacked_moves(self.installation, group)
+        if not kept:
             return
-        newcomers = [circuit for circuit in group if not circuit.is_landed]
-        bodies: list[Arrangement] = [{c.label: c.landing for c in landed}]
-        if not any(self._is_fixed(c) or c.poles == 2 for c in landed):
-            bodies += rigid_moves(self.installation, landed)
+        others = [circuit for circuit in group if self._needs_place(circuit)]
+        bodies: list[Arrangement] = [{c.label: c.landing for c in kept}]
+        if not any(self._is_fixed(c) or c.poles == 2 for c in kept):
+            bodies += rigid_moves(self.installation, kept)
         for body in bodies:
-            yield from beside_moves(self.installation, body, newcomers)
+            yield from beside_moves(self.installation, body, others)
+
+    def _needs_place(self, circuit: Circuit) -> bool:
+        """Whether it is new, or of a pair on one leg and free to leave what it shares."""
+        return not circuit.is_landed or (circuit.label in self._to_mend and not self._is_fixed(circuit))
 
     def _must_mend(self, group: Sequence[Circuit]) -> bool:
-        if self.panel.supply.system is SupplySystem.IN_PHASE:
-            return False
-        return any(is_pair_broken(self.panel, *pair) for pair in self._pairs if pair[0] in group)
+        return any(circuit.label in self._to_mend for circuit in group)
 
     def _is_flexible_pair(self, group: Sequence[Circuit]) -> bool:
         """Two circuits on one neutral whose breakers are nobody else's: they may be turned over."""
@@ -182,7 +186,7 @@ class _Seating:
         moved = [c for c in group if landings[c.label] != c.landing]
         if any(self._is_fixed(c) and c.is_landed for c in moved):
             return False
-        if len(group) > 1 and not self._keeps_pairs_whole(group, landings):
+        if len(group) > 1 and not (self._keeps_pairs_whole(group, landings) and self._keeps_ties(group, landings)):
             return False
         if not self._stays(group) and not self._tandems_fit(landings):
             return False
@@ -195,11 +199,24 @@ class _Seating:
         for pair in self._pairs:
             if pair[0] in group:
                 first, second = (landings[c.label][0].space for c in pair)
-                if self.panel.leg(first) is self.panel.leg(second):
+                is_opposite = self.panel.leg(first) is not self.panel.leg(second)
+                if all(landings[c.label] == c.landing for c in pair):
+                    # A pair that nothing can put right may stay as it is.
+                    is_whole = is_opposite or pair[0].label not in self._to_mend
+                else:
+                    is_whole = is_opposite and self._are_adjacent(first, second)
+                if not is_whole:
                     return False
-                is_as_found = all(landings[c.label] == c.landing for c in pair)
-                if not is_as_found and not self._are_adjacent(first, second):
-                    return False
+        return True
+
+    def _keeps_ties(self, group: Sequence[Circuit], landings: Mapping[str, Landing]) -> bool:
+        """Put what gets a new place directly above or below what it is tied to: a handle tie reaches no further."""
+        for name in dict.fromkeys(c.tied.casefold() for c in group if c.tied and self._needs_place(c)):
+            tied = [landings[c.label] for c in group if c.tied.casefold() == name]
+            spaces = [self.panel.by_number[t.space] for landing in tied for t in landing]
+            rows = sorted({space.row for space in spaces})
+            if len({space.column for space in spaces}) > 1 or rows[-1] - rows[0] >= len(rows):
+                return False
         return True
 
     def _are_adjacent(self, first: int, second: int) -> bool:

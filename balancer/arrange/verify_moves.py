@@ -63,15 +63,17 @@ def _halves_misplaced(proposal: Proposal) -> Iterator[str]:
 
 
 def _ties_broken(proposal: Proposal) -> Iterator[str]:
-    """Tied circuits keep their places to each other, or come together in one column where some were not landed."""
+    """Tied circuits keep their places to each other, or stand in one line where they are put together anew."""
     for group in proposal.tied_groups:
         if _may_be_turned_over(proposal, group):
             continue
-        if not all(circuit.is_landed for circuit in group):
-            if not _are_in_line(proposal, group):
-                yield f"{_names(proposal, group)} are tied and do not stand in one line"
-        elif not _moved_as_one(proposal, group):
+        is_landed = all(circuit.is_landed for circuit in group)
+        if is_landed and _moved_as_one(proposal, group):
+            continue
+        if not proposal.restacked.issuperset(circuit.label for circuit in group):
             yield f"{_names(proposal, group)} are tied and did not move together"
+        elif not _are_in_line(proposal, group):
+            yield f"{_names(proposal, group)} are tied and do not stand in one line"
 
 
 def _may_be_turned_over(proposal: Proposal, group: Sequence[Circuit]) -> bool:
