@@ -81,6 +81,22 @@ class Scenarios:
         )
 
 
+def split_scenarios(scenarios: Scenarios, until: np.datetime64) -> tuple[Scenarios, Scenarios]:
+    """Part readings, which stand in order of time, into those before a moment and the rest; nothing is copied.
+
+    Raises
+    ------
+    ValueError
+        When the scenarios have no times.
+    """
+    if scenarios.times is None:
+        msg = "only readings have times to part them at"
+        raise ValueError(msg)
+    later = np.flatnonzero(scenarios.times >= until)
+    cut = int(later[0]) if len(later) else len(scenarios)
+    return scenarios.part(slice(None, cut)), scenarios.part(slice(cut, None))
+
+
 def averages_only(scenarios: Scenarios) -> Scenarios | None:
     """Keep the scenarios that are averages over an hour or an interval; None where there are none."""
     if scenarios.are_averages:

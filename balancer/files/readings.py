@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -67,7 +67,7 @@ def read_readings(
         With everything that is wrong, and where the log would mislead.
     """
     log = open_log(path)
-    matched = match_columns(log, installation, None if unit is None else ReadingUnit(unit), mapping)
+    matched = match_columns(log, installation, None if unit is None else ReadingUnit(unit.upper()), mapping)
     cells = read_cells(log, [column.index for column in matched.columns], listener)
     if len(cells.stamps) < 2:
         raise one_problem(log.file, "holds fewer than two rows of readings", "read the log out again")
@@ -112,17 +112,40 @@ class _Builder:
     used: LogReadings
 
     def build(self, complete: NDArray[np.bool_], missing_cells: int) -> ReadingsLog:
-        constant = tuple(self._constant())
+        constant = self._constant()
         noise_cells, negative = self._settle_signs()
         amps = amps_of(self.used.installation, self.used.columns, self.used.values)
-        wall_s = self.clock.wall_s[complete]
-        clock, interval_s = self.clock, self.clock.interval_s
-        report = LogReport(
+        report = replace(
+            self._time_report(complete),
+            missing_cells=missing_cells,
+            constant=constant,
+            noise_cells=noise_cells,
+            negative=negative,
+            turned=amps.turned,
+        )
+        times = self.clock.wall_s[complete].astype("datetime64[s]")
+        scenarios = Scenarios(
+            kind=ScenarioKind.READINGS,
+            names=IntervalNames(times),
+            neutral_a=amps.neutral_a,
+            line_a=amps.line_a,
+            are_averages=True,
+            notes=(_average_note(report.interval_s), *report.warnings()),
+            times=times,
+            interval_s=report.interval_s,
+        )
+        return ReadingsLog(scenarios=scenarios, installation=amps.installation, report=report)
+
+    def _time_report(self, complete: NDArray[np.bool_]) -> LogReport:
+        """Report on rows and columns; what the readings themselves are like is still to come."""
+        clock, wall_s = self.clock, self.clock.wall_s[complete]
+        return LogReport(
             rows_read=len(self.stamps.wall_s),
             intervals_used=len(wall_s),
+            incomplete_intervals=len(complete) - len(wall_s),
             first=time_name(int(wall_s[0])),
             last=time_name(int(wall_s[-1])),
-            interval_s=interval_s,
+            interval_s=clock.interval_s,
             uneven_steps=clock.uneven_steps,
             gaps=clock.gaps,
             clock_changes=clock.changes,
@@ -132,34 +155,16 @@ class _Builder:
             other_twice=clock.other_twice,
             is_newest_first=clock.is_newest_first,
             out_of_order=clock.out_of_order,
-            missing_cells=missing_cells,
-            incomplete_intervals=int(np.count_nonzero(~complete)),
             absent=self.matched.absent,
             strangers=self.matched.strangers,
             devices=self.matched.devices,
             empty=tuple(column.name for column in self.empty),
-            constant=constant,
-            noise_cells=noise_cells,
-            negative=negative,
-            turned=amps.turned,
         )
-        times = wall_s.astype("datetime64[s]")
-        scenarios = Scenarios(
-            kind=ScenarioKind.READINGS,
-            names=IntervalNames(times),
-            neutral_a=amps.neutral_a,
-            line_a=amps.line_a,
-            are_averages=True,
-            notes=(_average_note(interval_s), *report.warnings()),
-            times=times,
-            interval_s=interval_s,
-        )
-        return ReadingsLog(scenarios=scenarios, installation=amps.installation, report=report)
 
-    def _constant(self) -> list[tuple[str, float]]:
+    def _constant(self) -> tuple[tuple[str, float], ...]:
         low, high = self.used.values.min(axis=0), self.used.values.max(axis=0)
         names = [column.name for column in self.used.columns]
-        return [(name, float(value)) for name, value, top in zip(names, low, high, strict=True) if value == top]
+        return tuple((name, float(least)) for name, least, most in zip(names, low, high, strict=True) if least == most)
 
     def _settle_signs(self) -> tuple[int, tuple[tuple[str, int, float], ...]]:
         """Count what is just below zero as 0, in place, and list what is clearly export."""

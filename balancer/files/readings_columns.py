@@ -11,7 +11,7 @@ from balancer.files.problems import Place, ProblemList
 from balancer.files.readings_text import LogText
 from balancer.files.sheet_file import read_sheet
 from balancer.files.source import FilePath
-from balancer.files.table import build_table, header_key
+from balancer.files.table import TableRow, build_table, header_key
 from balancer.files.words import did_you_mean, nearest_word
 from balancer.panel import Circuit, Installation, Pole, SupplySystem
 
@@ -80,8 +80,7 @@ def match_columns(
         meant = matcher.meaning(name)
         circuit = matcher.circuit(meant.label) if meant else None
         if meant is None or circuit is None:
-            if name and not matcher.is_left_out(name):
-                strangers.append((name, matcher.nearest(name)))
+            strangers += [(name, matcher.nearest(name))] if name and not matcher.is_left_out(name) else []
         elif not installation.circuits[circuit].carries_load:
             devices.append(name)
         elif meant.unit is None:
@@ -90,20 +89,15 @@ def match_columns(
             columns.append(LogColumn(index, name, circuit, meant.unit, meant.pole))
     _report_shares(problems, log, installation, columns)
     problems.raise_if_any()
+    loads = {index: each.label for index, each in enumerate(installation.circuits) if each.carries_load}
     if not columns:
-        labels = [circuit.label for circuit in installation.circuits if circuit.carries_load]
-        remedy = f"name columns after circuits, such as {labels[0]}_a, or give a mapping file" if labels else ""
+        remedy = f"name columns after circuits, such as {next(iter(loads.values()), 'heater')}_a, or map them"
         problems.add(Place(log.header_line), "no column belongs to a load of the inventory", remedy)
     problems.raise_if_any()
-    used = [column.circuit for column in columns]
-    loads = [(index, circuit) for index, circuit in enumerate(installation.circuits) if circuit.carries_load]
-    absent = tuple(circuit.label for index, circuit in loads if index not in used)
-    return MatchedColumns(
-        tuple(sorted(columns, key=lambda column: (column.circuit, column.pole or ""))),
-        tuple(strangers),
-        tuple(devices),
-        absent,
-    )
+    columns.sort(key=lambda column: (column.circuit, column.pole or ""))
+    used = {column.circuit for column in columns}
+    absent = tuple(label for index, label in loads.items() if index not in used)
+    return MatchedColumns(tuple(columns), tuple(strangers), tuple(devices), absent)
 
 
 @dataclass(frozen=True)
@@ -192,25 +186,44 @@ def _read_mapping(path: FilePath, log: LogText, installation: Installation) -> d
         if needed not in names:
             problems.add(Place(table.header_line), f"the column {needed} is missing", "write column,circuit on top")
     problems.raise_if_any()
-    matcher = _Matcher(installation, None, {})
-    labels = [circuit.label for circuit in installation.circuits]
+    reader = _MappingReader(problems, names, _Matcher(installation, None, {}))
     headers = {name.casefold() for name in log.header[1:]}
     found: dict[str, _Meant | None] = {}
     for row in table.rows:
-        header, label = row.cells[names["column"]], row.cells[names["circuit"]]
-        unit = row.cells[names["unit"]].upper() if "unit" in names else ""
-        meant = matcher.meaning(label) if label else None
+        header = row.cells[names["column"]]
+        place = Place(row.line, names["column"], header)
         if header.casefold() not in headers:
-            problems.add(Place(row.line, names["column"], header), "no column of the log has this name", "copy it")
+            problems.add(place, "no column of the log has this name", "copy it from the log")
         elif header.casefold() in found:
-            problems.add(Place(row.line, names["column"], header), "stands twice", "keep one of the two lines")
-        if label and meant is None:
-            remedy = did_you_mean(label, labels)
-            problems.add(Place(row.line, names["circuit"], label), "no circuit of the inventory has this label", remedy)
-        if unit not in ("", *ReadingUnit):
-            problems.add(Place(row.line, names["unit"], unit), "is no unit taken here", "write A or W")
-        elif meant is not None and unit:
-            meant = _Meant(meant.label, ReadingUnit(unit), meant.pole)
-        found[header.casefold()] = meant
+            problems.add(place, "stands twice", "keep one of the two lines")
+        found[header.casefold()] = reader.meaning(row)
     problems.raise_if_any()
     return found
+
+
+@dataclass(frozen=True)
+class _MappingReader:
+    """Reads what the lines of a mapping file say; `names` are its columns as written, by their folded names."""
+
+    problems: ProblemList
+    names: Mapping[str, str]
+    matcher: _Matcher
+
+    def meaning(self, row: TableRow) -> _Meant | None:
+        label, unit = row.cells[self.names["circuit"]], self._unit(row)
+        if not label:
+            return None
+        meant = self.matcher.meaning(label)
+        if meant is None:
+            labels = [circuit.label for circuit in self.matcher.installation.circuits]
+            place = Place(row.line, self.names["circuit"], label)
+            self.problems.add(place, "no circuit of the inventory has this label", did_you_mean(label, labels))
+            return None
+        return _Meant(meant.label, unit or meant.unit, meant.pole)
+
+    def _unit(self, row: TableRow) -> ReadingUnit | None:
+        text = row.cells[self.names["unit"]] if "unit" in self.names else ""
+        if text and text.upper() not in tuple(ReadingUnit):
+            self.problems.add(Place(row.line, self.names["unit"], text), "is no unit taken here", "write A or W")
+            return None
+        return ReadingUnit(text.upper()) if text else None

@@ -55,7 +55,6 @@ class LogReport:
     other_twice: int
     is_newest_first: bool
     out_of_order: int
-    missing_cells: int
     incomplete_intervals: int
     """Intervals left out because a reading is missing in them."""
     absent: tuple[str, ...]
@@ -66,13 +65,14 @@ class LogReport:
     """Columns of spares and of devices that carry no load when planning."""
     empty: tuple[str, ...]
     """Columns without a single reading: counted with 0 A."""
-    constant: tuple[tuple[str, float], ...]
+    missing_cells: int = 0
+    constant: tuple[tuple[str, float], ...] = ()
     """Columns that show one and the same figure throughout."""
-    noise_cells: int
+    noise_cells: int = 0
     """Small negative readings counted as 0."""
-    negative: tuple[tuple[str, int, float], ...]
+    negative: tuple[tuple[str, int, float], ...] = ()
     """Columns with export: name, intervals, lowest reading."""
-    turned: tuple[str, ...]
+    turned: tuple[str, ...] = ()
     """Circuits on two legs of a wye whose heavier pole changes."""
 
     @property
@@ -96,9 +96,9 @@ class LogReport:
     def _time_lines(self) -> Iterator[str]:
         length = duration(self.interval_s)
         yield f"Readings from {self.first} to {self.last}, an interval every {length}, each an average over it."
-        days = self.intervals_used * self.interval_s / 86_400
+        covered = duration(self.intervals_used * self.interval_s)
         yield (
-            f"{self.intervals_used:,} of {self.rows_read:,} rows used: {days:.1f} days, "
+            f"{self.intervals_used:,} of {self.rows_read:,} rows used: {covered}, "
             f"{100.0 * self.covered_share:.3g} % of a year."
         )
         if self.date_order is not DateOrder.YEAR_FIRST:

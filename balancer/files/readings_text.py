@@ -31,7 +31,7 @@ _UNPACKERS: tuple[tuple[bytes, Callable[[io.BytesIO], io.BufferedIOBase]], ...] 
 )
 _WORKBOOK_STARTS = (b"PK\x03\x04", b"\xd0\xcf\x11\xe0")
 _ANNOUNCED = re.compile(rb"sep=(.)\s*", re.IGNORECASE)
-_COMMENT_LINE = re.compile(rb"^[ \t]*#[^\r\n]*", re.MULTILINE)
+_COMMENT_LINE = re.compile(rb"^ *#[^\n]*", re.MULTILINE)
 _BLOCK_BYTES = 1_000_000
 _SAMPLE_LINES = 200
 _MOST_SHOWN = 5
@@ -74,8 +74,12 @@ def open_log(path: FilePath) -> LogText:
     header_line = data.count(b"\n", 0, start) + 1
     body = data[end + 1 :] if end >= 0 else b""
     header = _names(file, header_text, delimiter, header_line)
-    lines = _checked_lines(file, body, delimiter, len(header), header_line)
-    return LogText(file, header, header_line, body, lines, delimiter, _decimal(body, delimiter))
+    counts, is_blank = _separators(body, delimiter)
+    lines = np.flatnonzero(~is_blank).astype(np.int64)
+    _refuse_wide(file, counts[lines], lines + header_line + 1, len(header))
+    decimal = _decimal(body, delimiter)
+    body = _padded(body, lines[counts[lines] < len(header) - 1], counts, delimiter.encode(), len(header))
+    return LogText(file, header, header_line, body, lines + header_line + 1, delimiter, decimal)
 
 
 def _unpacked(file: str, data: bytes) -> bytes:
@@ -131,21 +135,28 @@ def _names(file: str, text: str, delimiter: str, line: int) -> tuple[str, ...]:
     return tuple(names)
 
 
-def _checked_lines(file: str, body: bytes, delimiter: str, width: int, header_line: int) -> NDArray[np.int64]:
-    """Count the cells of every line: a cell too many would shift the readings of all that follow it."""
-    counts, is_blank = _separators(body, delimiter)
-    lines = np.flatnonzero(~is_blank).astype(np.int64)
-    wide = np.flatnonzero(counts[lines] >= width)
+def _refuse_wide(file: str, counts: NDArray[np.int64], lines: NDArray[np.int64], width: int) -> None:
+    """Raise where a row has a cell too many, which would shift the readings of all that follow it."""
+    wide = np.flatnonzero(counts >= width)
     problems = ProblemList(file)
     for row in wide[:_MOST_SHOWN]:
-        problem = f"this row has {counts[lines[row]] + 1} cells and the header {width}"
+        problem = f"this row has {counts[row] + 1} cells and the header {width}"
         remedy = "look for a separator too many, such as a decimal comma between commas"
-        problems.add(Place(header_line + 1 + int(lines[row])), problem, remedy)
+        problems.add(Place(int(lines[row])), problem, remedy)
     if len(wide) > _MOST_SHOWN:
         remedy = "correct them alike"
         problems.add(Place(), f"{len(wide)} rows have more cells than the header; the first are listed", remedy)
     problems.raise_if_any()
-    return lines + header_line + 1
+
+
+def _padded(body: bytes, short: NDArray[np.int64], counts: NDArray[np.int64], delimiter: bytes, width: int) -> bytes:
+    """Fill up rows that were cut short, since the parser asks for every column."""
+    if not len(short):
+        return body
+    lines = body.split(b"\n")
+    for line in short:
+        lines[line] += delimiter * (width - 1 - int(counts[line]))
+    return b"\n".join(lines)
 
 
 def _separators(body: bytes, delimiter: str) -> tuple[NDArray[np.int64], NDArray[np.bool_]]:
