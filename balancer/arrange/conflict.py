@@ -15,8 +15,12 @@ from balancer.arrange.seats import Hold, build_units
 from balancer.arrange.solve import SolveStatus, solve
 from balancer.errors import InfeasibleError, NoAnswerInTime
 from balancer.panel import Installation, Role, format_landing
+from balancer.rules import check_installation, errors_of
 
 _CHECK_WORK_S = 10.0
+
+_MENDED_BY_MOVING = ("shared-neutral-one-leg", "tandem-not-allowed", "stab-limit")
+"""Error-level rules that another arrangement can satisfy."""
 
 
 @dataclass(frozen=True)
@@ -50,7 +54,28 @@ def explain_no_seats(installation: Installation, options: Options, clock: Clock)
             ["free adjacent spaces, or use a larger panel or a subpanel"],
         )
     conflict = _smallest_conflict(installation, options, constraints, clock)
+    if len(conflict) == 1 and conflict[0].hold is None:
+        return _too_few_landings(installation, options, clock)
     return InfeasibleError([c.text for c in conflict], [c.remedy for c in conflict])
+
+
+def _too_few_landings(installation: Installation, options: Options, clock: Clock) -> InfeasibleError:
+    """Name what must be mended, and how many landings that takes."""
+    units = build_units(installation, options)
+    model = cp_model.CpModel()
+    seats = SeatModel(model, units, row_limits_a(installation.panel.stab_a, units))
+    model.minimize(seats.landings_changed)
+    solved = solve(model, seats.flat, clock, _CHECK_WORK_S, is_assignment=True)
+    needed = f"at least {_count(seats.seating(solved.values).landings_changed)}" if solved.status.has_answer else "more"
+    errors = [e for e in errors_of(check_installation(installation)) if e.rule in _MENDED_BY_MOVING]
+    names = "; ".join(f"{error.rule} ({' and '.join(error.circuits)})" for error in errors)
+    what = f"mending {names}" if names else "fitting every circuit in"
+    text = f"at most {_count(options.max_landings or 0)} may change, and {what} takes {needed}"
+    return InfeasibleError([text], ["allow more with --landings"])
+
+
+def _count(landings: int) -> str:
+    return f"{landings} landing{'' if landings == 1 else 's'}"
 
 
 def _shortage(installation: Installation) -> InfeasibleError | None:
@@ -118,7 +143,7 @@ def _constraints(installation: Installation, options: Options) -> list[_Constrai
             if math.isfinite(circuit.slack_in):
                 found.append(_Constraint(Hold.REACH, circuit.label, text, "allow splices with --splice"))
     if options.max_landings is not None:
-        text = f"at most {options.max_landings} landings may change"
+        text = f"at most {_count(options.max_landings)} may change"
         found.append(_Constraint(None, "", text, "allow more with --landings"))
     return found
 

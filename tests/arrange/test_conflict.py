@@ -66,3 +66,10 @@ def test_clock_that_runs_out_gives_no_reason(installation: Build, circuit: Make)
     panel = no_room_for_a_two_pole(installation, circuit)
     with pytest.raises(NoAnswerInTime, match="in the way"):
         explain_no_seats(panel, Options(), Clock(0.0))
+
+
+def test_too_few_landings_name_what_must_be_mended_and_what_it_takes(installation: Build, circuit: Make) -> None:
+    pair = [circuit("left", "1", shared_neutral="m"), circuit("right", "5", shared_neutral="m")]
+    assert reasons(installation(*pair, spaces=6), Options(max_landings=0)) == [
+        "at most 0 landings may change, and mending shared-neutral-one-leg (left and right) takes at least 1 landing"
+    ]
