@@ -128,19 +128,22 @@ class LegModel:
             self._model.clear_objective()  # type: ignore[no-untyped-call]
 
     def _with_cuts(self, work_s: float, hint: Answer | None) -> Decision:
+        bound = float("-inf")
         while work_s > 0:
             self._model.clear_hints()  # type: ignore[no-untyped-call]
             if hint is not None:
                 for variable, taken in zip(self._taken, hint, strict=True):
                     self._model.add_hint(variable, int(taken))
             solved = solve(self._model, self._taken, self._clock, work_s)
+            # A model with fewer cuts allows more, so that its bound holds for one with more of them too.
+            bound = max(bound, solved.bound)
             if not solved.status.has_answer:
-                return Decision(solved.status, None, solved.bound)
+                return Decision(solved.status, None, bound)
             answer = np.array(solved.values, dtype=np.int8)
             if not self._cut_broken(answer):
-                return Decision(solved.status, answer, solved.bound)
+                return Decision(solved.status, answer, bound)
             work_s -= max(solved.work_s, _LEAST_ROUND_S)
-        return Decision(SolveStatus.UNKNOWN, None)
+        return Decision(SolveStatus.UNKNOWN, None, bound)
 
     def _cut_broken(self, answer: Answer) -> bool:
         """Cut the worst rows that an answer breaks, in the direction in which it breaks them."""

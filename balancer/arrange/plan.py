@@ -183,7 +183,7 @@ class Planner:
             # Above a limit by less than the model's rounding.
             model.forbid(decision.answer)
             decision = model.decide(_FIRST_ANSWER_WORK_S)
-        if decision.status is SolveStatus.INFEASIBLE:
+        if decision.status is SolveStatus.INFEASIBLE and not self._seater.has_given_up:
             raise self._reason()
         message = "no arrangement was found before the limit, and none was ruled out"
         raise NoAnswerInTime(message)
@@ -215,17 +215,14 @@ class Planner:
         """Close every objective in turn and settle the seats."""
         stages = self.stages()
         objectives: list[ObjectiveResult] = []
-        neutral = self._free_neutral(stages) if self.options.aim is Aim.LEGS else None
         for name in _ORDER[self.options.aim]:
             if name is ObjectiveName.IMBALANCE and self.problem.does_imbalance_repeat_neutral:
                 continue
             result = stages.close_peak(name)
             objectives.append(result)
             stages.hold(name, result.value + self.options.within_a)
-            if name is ObjectiveName.NEUTRAL and neutral is None:
-                neutral = result
-        assert neutral is not None, "the neutral is always among the objectives"
         objectives += [stages.close_effort(), stages.close_mean()]
+        neutral = objectives[0] if self.options.aim is Aim.NEUTRAL else self._free_neutral(stages)
         return self._plan(stages, objectives, neutral)
 
     def _free_neutral(self, stages: Stages) -> ObjectiveResult:

@@ -168,6 +168,8 @@ class Seater:
         self._known: dict[tuple[tuple[int, ...], ...], Seating | None] = {}
         self.has_given_up = False
         """Whether some answer was left undecided: then no seats found does not mean that there are none."""
+        self.has_settled_for_more = False
+        """Whether some seats were taken that may not be those of the least effort."""
 
     def least_effort(self, signs: tuple[tuple[int, ...], ...]) -> Seating | None:
         """Seating of least effort for a pattern of every unit; None where there is none."""
@@ -196,14 +198,10 @@ class Seater:
     def canonical(self, signs: tuple[tuple[int, ...], ...], seating: Seating) -> Seating:
         """Choose among the seatings of the same effort: the least reach, then unit by unit the earliest placement."""
         seating = self._shortest(signs, seating)
-        for index in range(len(self._units)):
-            settled = {self._units[i].name: seating.placements[i] for i in range(index)}
-            placement = seating.placements[index]
-            options = [p for p in self._units[index].placements if p.signs == signs[index]]
-            if placement is None or placement is options[0]:
-                continue
-            better = self._settle_one(signs, seating, settled, index)
-            seating = better if better is not None else seating
+        for index, unit in enumerate(self._units):
+            first = next(placement for placement in unit.placements if placement.signs == signs[index])
+            if seating.placements[index] is not first:
+                seating = self._settle_one(signs, seating, index) or seating
         return seating
 
     def _shortest(self, signs: tuple[tuple[int, ...], ...], seating: Seating) -> Seating:
@@ -215,28 +213,21 @@ class Seater:
 
         return self._solve(signs, aim) or seating
 
-    def _settle_one(
-        self,
-        signs: tuple[tuple[int, ...], ...],
-        seating: Seating,
-        settled: Mapping[str, Placement | None],
-        index: int,
-    ) -> Seating | None:
-        effort = seating.effort
+    def _settle_one(self, signs: tuple[tuple[int, ...], ...], seating: Seating, index: int) -> Seating | None:
+        """Give a unit its earliest placement, the units before it as they are; a spare comes out last of all."""
         reach = sum(round(p.reach_in * _REACH_SCALE) for p in seating.placements if p is not None)
 
-        def pin(seats: SeatModel) -> None:
-            seats.model.add(seats.effort <= effort)
+        def aim(seats: SeatModel) -> None:
+            seats.model.add(seats.effort <= seating.effort)
             seats.model.add(seats.reach <= reach)
-            for unit, literals in zip(seats.units, seats.seats, strict=True):
-                if unit.name in settled:
-                    wanted = settled[unit.name]
-                    for placement, literal in zip(unit.placements, literals, strict=True):
-                        seats.model.add(literal == int(wanted is not None and placement.landings == wanted.landings))
-            places = list(range(len(seats.seats[index])))
-            seats.model.minimize(cp_model.LinearExpr.weighted_sum(seats.seats[index], places))
+            settled = zip(seats.units[:index], seats.seats, seating.placements, strict=False)
+            for unit, literals, wanted in settled:
+                for placement, literal in zip(unit.placements, literals, strict=True):
+                    seats.model.add(literal == int(placement is wanted))
+            ranks = [rank - len(seats.seats[index]) for rank in range(len(seats.seats[index]))]
+            seats.model.minimize(cp_model.LinearExpr.weighted_sum(seats.seats[index], ranks))
 
-        return self._solve(signs, pin)
+        return self._solve(signs, aim)
 
     def _solve(self, signs: tuple[tuple[int, ...], ...], aim: Callable[[SeatModel], None]) -> Seating | None:
         model = cp_model.CpModel()
@@ -250,6 +241,7 @@ class Seater:
         aim(seats)
         solved = solve(model, seats.flat, self._clock, _SEAT_WORK_S, is_assignment=True)
         self.has_given_up |= solved.status is SolveStatus.UNKNOWN
+        self.has_settled_for_more |= solved.status is SolveStatus.FEASIBLE
         if not solved.status.has_answer:
             return None
         return Seating(self._units, seats.seating(solved.values).placements)

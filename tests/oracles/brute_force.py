@@ -152,7 +152,8 @@ def _placings(installation: Installation, options: Options, unit: list[Circuit])
         is_allowed = all(_may_go(installation, options, circuit, placing[circuit.label]) for circuit in unit)
         if is_allowed and placing not in allowed and _keeps_pairs(installation, unit, placing):
             allowed.append(placing)
-    return [*allowed, {}] if all(circuit.role is Role.SPARE for circuit in unit) else allowed
+    may_come_out = all(circuit.role is Role.SPARE and not _is_stuck(circuit) for circuit in unit)
+    return [*allowed, {}] if may_come_out else allowed
 
 
 def _keeps_pairs(installation: Installation, unit: list[Circuit], placing: Placing) -> bool:
@@ -317,12 +318,14 @@ def _keeps_stabs(installation: Installation, arrangement: Placing, stuck: dict[i
 
 
 def _unavoidable_ratings(installation: Installation, placings: list[list[Placing]]) -> dict[int, float]:
-    """What the units put in each row wherever they go."""
+    """What of the ratings found in each row stays there wherever the units go; what is new may not overload a row."""
     stuck: dict[int, float] = {}
     for unit in placings:
+        labels = [label for label in installation.as_found if any(label in placing for placing in unit)]
+        found = _row_ratings(installation, {label: installation.as_found[label] for label in labels})
         ratings = [_row_ratings(installation, placing) for placing in unit]
-        for row in {space.row for space in installation.panel.spaces}:
-            stuck[row] = stuck.get(row, 0.0) + min((rating.get(row, 0.0) for rating in ratings), default=0.0)
+        for row, rating in found.items():
+            stuck[row] = stuck.get(row, 0.0) + min(rating, *(each.get(row, 0.0) for each in ratings))
     return stuck
 
 
