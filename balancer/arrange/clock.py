@@ -43,9 +43,11 @@ class Clock:
     def listening(self) -> Iterator[None]:
         """Take the first Ctrl-C as a wish to stop soon; the second one stops at once.
 
-        A solver in C++ would swallow the signal or die of it, so it becomes a flag that is asked for.
+        A solver in C++ would swallow the signal or die of it, so it becomes a flag that is asked for. A job that was
+        told to ignore Ctrl-C goes on ignoring it.
         """
-        if threading.current_thread() is not threading.main_thread():
+        is_ignored = signal.getsignal(signal.SIGINT) is signal.SIG_IGN
+        if is_ignored or threading.current_thread() is not threading.main_thread():
             yield
             return
         before = signal.signal(signal.SIGINT, self._interrupt)

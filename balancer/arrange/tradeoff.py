@@ -66,7 +66,7 @@ def trade_landings(  # noqa: PLR0913 - what plan_arrangement takes, and the land
                 break
             except InfeasibleError as error:
                 refusals.append((cap, error))
-    if not points and refusals:
+    if not points and refusals and not clock.is_stopped:
         raise refusals[-1][1]
     return Tradeoff(
         points=tuple(points),

@@ -26,7 +26,7 @@ def asfound(files: InputFiles, output: Output) -> int:
     from balancer.reports.document import as_found_document
     from balancer.reports.terminal import as_found_report
 
-    installation = read_installation(files)
+    installation = read_installation(files, is_quiet=output.is_quiet)
     answer = as_found_answer(installation, read_scenarios_of(installation, files))
     show(as_found_document(answer) if output.as_json else as_found_report(answer))
     return 0

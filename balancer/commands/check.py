@@ -29,7 +29,7 @@ def check(files: InputFiles, output: Output) -> int:
     from balancer.reports.document import check_document
     from balancer.reports.terminal import check_report
 
-    installation = read_installation(files)
+    installation = read_installation(files, is_quiet=output.is_quiet)
     answer = as_found_answer(installation, read_scenarios_of(installation, files))
     show(check_document(answer) if output.as_json else check_report(answer))
     return 1 if answer.has_errors else 0

@@ -13,6 +13,7 @@ from balancer import __version__
 from balancer.commands import asfound, check, plan, start, tradeoff
 from balancer.commands.examples import write_examples
 from balancer.commands.failures import OUR_FAULT, Failure, describe_failure
+from balancer.commands.interrupts import Interruption
 from balancer.commands.options import CONTEXT_SETTINGS
 
 EXAMPLES = (
@@ -56,13 +57,15 @@ class CommandLine(click.Group):
         given = kwargs.get("args", args[0] if args else None)
         words = sys.argv[1:] if given is None else list(given)
         kwargs["standalone_mode"] = False
+        interruption = Interruption()
         try:
-            code = super().main(*args, **kwargs)
+            with interruption:
+                code = super().main(*args, **kwargs)
         except click.exceptions.NoArgsIsHelpError as help_wanted:
             help_wanted.show()
             code = help_wanted.exit_code
         except (KeyboardInterrupt, Exception) as error:
-            failure = describe_failure(error)
+            failure = describe_failure(KeyboardInterrupt() if interruption.has_come else error)
             if failure.exit_code == OUR_FAULT and _wants_traceback(words):
                 traceback.print_exc()
             code = _report(failure, as_json="--json" in words)
@@ -78,7 +81,7 @@ def _report(failure: Failure, *, as_json: bool) -> int:
     from balancer.reports.document import error_document
     from balancer.reports.problems import problems_report
 
-    side_console().print(problems_report(failure.headline, failure.problems, closing=failure.closing))
+    side_console().write(problems_report(failure.headline, failure.problems, closing=failure.closing))
     if as_json:
         show(error_document(failure.headline, failure.problems))
     return failure.exit_code

@@ -15,6 +15,9 @@ import click
 
 CONTEXT_SETTINGS = {"help_option_names": ["-h", "--help"], "max_content_width": 100}
 
+MOST_LANDINGS = 168
+"""Two halves in each of 84 spaces."""
+
 Function = TypeVar("Function", bound=Callable[..., Any])
 
 
@@ -26,6 +29,12 @@ class InputFiles:
     panel_file: str | None
     scenario_file: str | None
     profile_file: str | None
+
+    @property
+    def names(self) -> tuple[str, ...]:
+        """Every file that is given."""
+        given = (self.inventory, self.panel_file, self.scenario_file, self.profile_file)
+        return tuple(name for name in given if name is not None)
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -49,10 +58,17 @@ class Wishes:
     """What the user asks of an arrangement; `aim` None leaves it to the supply."""
 
     aim: str | None
-    within_a: float
     turn_240: bool
     splice: bool
     time_limit_s: float | None
+
+
+@dataclass(frozen=True, kw_only=True)
+class LandingWishes:
+    """What may be given up to save landings, and how many may change at most."""
+
+    within_a: float
+    max_landings: int | None = None
 
 
 class Amount(click.ParamType[float]):
@@ -71,8 +87,8 @@ class Amount(click.ParamType[float]):
             number = math.nan
         is_too_low = number < 0 or (number == 0 and not self._is_zero_allowed)
         if not math.isfinite(number) or is_too_low or number > self._highest:
-            least = "0" if self._is_zero_allowed else "above 0"
-            self.fail(f"{value!r} is not a number of {self.name} from {least} to {self._highest:g}.", param, ctx)
+            least = "from 0" if self._is_zero_allowed else "above 0 and up"
+            self.fail(f"{value!r} is not a number of {self.name} {least} to {self._highest:g}.", param, ctx)
         return number
 
 
@@ -116,6 +132,30 @@ def output_options() -> Callable[[Function], Function]:
     )
 
 
+def landing_options() -> Callable[[Function], Function]:
+    """Add what landings are worth, as `landing`."""
+    return _bundle(
+        "landing",
+        LandingWishes,
+        click.option(
+            "--within",
+            "within_a",
+            type=Amount("amps", highest=1000),
+            metavar="AMPS",
+            default=0.25,
+            show_default=True,
+            help="Give up this much of the best possible to save landings.",
+        ),
+        click.option(
+            "--landings",
+            "max_landings",
+            type=click.IntRange(min=0, max=MOST_LANDINGS),
+            metavar="N",
+            help="Change at most N landings.",
+        ),
+    )
+
+
 def saving_options() -> Callable[[Function], Function]:
     """Add where the as-left inventory is saved, as `saving`."""
     return _bundle(
@@ -136,15 +176,6 @@ def planning_options() -> Callable[[Function], Function]:
             type=click.Choice(["neutral", "legs"]),
             help="What comes first: the peak neutral or the heavy leg.  [default: legs where an inverter or "
             "generator feeds the panel, else neutral]",
-        ),
-        click.option(
-            "--within",
-            "within_a",
-            type=Amount("amps", highest=1000),
-            metavar="AMPS",
-            default=0.25,
-            show_default=True,
-            help="Give up this much of the best possible to save landings.",
         ),
         click.option("--turn-240", "turn_240", is_flag=True, help="Let the hots of 120/240 V circuits change places."),
         click.option("--splice", is_flag=True, help="Let conductors be lengthened with a splice."),

@@ -2,16 +2,23 @@
 
 from __future__ import annotations
 
+import time
+from collections.abc import Sequence
+from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
 import click
 
 from balancer.commands.examples import ExampleCommand
+from balancer.commands.failures import INTERRUPTED
+from balancer.commands.interrupts import StopRequest
 from balancer.commands.options import (
     InputFiles,
+    LandingWishes,
     Output,
     Saving,
     Wishes,
+    landing_options,
     output_options,
     panel_inputs,
     planning_options,
@@ -19,7 +26,7 @@ from balancer.commands.options import (
 )
 
 if TYPE_CHECKING:
-    from balancer.arrange.results import Options, Plan
+    from balancer.arrange.results import Options, Plan, Tradeoff
     from balancer.commands.progress import ProgressLine
     from balancer.electrical.scenarios import Scenarios
     from balancer.panel import Installation
@@ -40,10 +47,10 @@ MOST_FEWER = 3
 )
 @panel_inputs()
 @planning_options()
-@click.option("--landings", "max_landings", type=click.IntRange(min=0), metavar="N", help="Change at most N landings.")
+@landing_options()
 @saving_options()
 @output_options()
-def plan(files: InputFiles, wishes: Wishes, max_landings: int | None, saving: Saving, output: Output) -> int:
+def plan(files: InputFiles, wishes: Wishes, landing: LandingWishes, saving: Saving, output: Output) -> int:
     """Find the arrangement with the lowest peak neutral current, and say what to do at the panel."""
     from balancer.commands.inputs import check_save_path, planning_choices, read_installation, read_scenarios_of
     from balancer.commands.progress import ProgressLine
@@ -52,31 +59,60 @@ def plan(files: InputFiles, wishes: Wishes, max_landings: int | None, saving: Sa
     from balancer.reports.terminal import plan_report
 
     check_save_path(saving, files)
-    installation = read_installation(files)
+    installation = read_installation(files, is_quiet=output.is_quiet)
     scenarios = read_scenarios_of(installation, files)
-    options = planning_choices(installation, wishes, max_landings)
-    with ProgressLine(side_console(), is_quiet=output.is_quiet) as progress:
-        answer = _answer(installation, scenarios, options, progress)
-    _save(answer.plan, saving)
-    show(plan_document(answer) if output.as_json else plan_report(answer))
-    return _exit_code(answer)
+    options = planning_choices(installation, wishes, landing)
+    search = _Search(installation, scenarios, options)
+    progress = ProgressLine(side_console(), is_quiet=output.is_quiet)
+    with StopRequest(progress.say_stopping) as stop:
+        with progress:
+            answer = search.answer(progress, stop)
+        _save(answer.plan, saving)
+        show(plan_document(answer) if output.as_json else plan_report(answer))
+    return INTERRUPTED if stop.is_made or _was_interrupted(answer) else int(answer.has_errors)
 
 
-def _answer(installation: Installation, scenarios: Scenarios, options: Options, progress: ProgressLine) -> PlanAnswer:
-    from balancer.arrange.plan import plan_arrangement
-    from balancer.arrange.results import Tradeoff
-    from balancer.arrange.tradeoff import trade_landings
-    from balancer.errors import InfeasibleError
-    from balancer.reports.answers import plan_answer
+@dataclass(frozen=True)
+class _Search:
+    """What is to be planned, and how."""
 
-    found = plan_arrangement(installation, scenarios, options, progress)
-    fewer = fewer_landings(found.landings_changed) if found.is_complete else ()
-    if not fewer:
-        return plan_answer(found)
-    try:
-        return plan_answer(found, trade_landings(installation, scenarios, options, fewer, progress))
-    except InfeasibleError as refusal:
-        return plan_answer(found, Tradeoff(points=(), flat_from=None, refused=fewer, refusal=str(refusal)))
+    installation: Installation
+    scenarios: Scenarios
+    options: Options
+
+    def answer(self, progress: ProgressLine, stop: StopRequest) -> PlanAnswer:
+        """Plan, then look at what fewer landings would give in the time that is left."""
+        from balancer.arrange.plan import plan_arrangement
+        from balancer.reports.answers import plan_answer
+
+        stop.raise_if_made()
+        began_s = time.monotonic()
+        found = plan_arrangement(self.installation, self.scenarios, self.options, progress, on_interrupt=stop.make)
+        fewer = fewer_landings(found.landings_changed) if found.is_complete and not stop.is_made else ()
+        if not fewer:
+            return plan_answer(found)
+        rest = replace(self, options=_options_after(self.options, time.monotonic() - began_s))
+        return plan_answer(found, rest.trade(fewer, progress, stop))
+
+    def trade(self, landings: Sequence[int], progress: ProgressLine, stop: StopRequest) -> Tradeoff:
+        """Find what these numbers of landings give; that they give nothing is an answer too."""
+        from balancer.arrange.results import Tradeoff
+        from balancer.arrange.tradeoff import trade_landings
+        from balancer.errors import InfeasibleError
+
+        try:
+            return trade_landings(
+                self.installation, self.scenarios, self.options, landings, progress, on_interrupt=stop.make
+            )
+        except InfeasibleError as refusal:
+            return Tradeoff(points=(), flat_from=None, refused=tuple(landings), refusal=str(refusal))
+
+
+def _options_after(options: Options, spent_s: float) -> Options:
+    """Take the time already spent off the limit."""
+    if options.time_limit_s is None:
+        return options
+    return replace(options, time_limit_s=max(0.0, options.time_limit_s - spent_s))
 
 
 def fewer_landings(landings: int) -> tuple[int, ...]:
@@ -92,11 +128,7 @@ def _save(found: Plan, saving: Saving) -> None:
         save_inventory(saving.save, found.installation, found.as_left, found.removed_spares, force=saving.is_forced)
 
 
-def _exit_code(answer: PlanAnswer) -> int:
+def _was_interrupted(answer: PlanAnswer) -> bool:
     from balancer.arrange.results import Stop
-    from balancer.commands.failures import INTERRUPTED
 
-    stops = (answer.plan.stop, answer.fewer.stop if answer.fewer else Stop.NONE)
-    if Stop.INTERRUPTED in stops:
-        return INTERRUPTED
-    return 1 if answer.has_errors else 0
+    return Stop.INTERRUPTED in (answer.plan.stop, answer.fewer.stop if answer.fewer else Stop.NONE)

@@ -6,6 +6,8 @@ import codecs
 import io
 import json
 import os
+import shlex
+import subprocess
 import sys
 from typing import IO, Any
 
@@ -37,15 +39,24 @@ class AnswerConsole(Console):
     def on_broken_pipe(self) -> None:
         """Throw the rest away; the exit code still says what the answer was."""
         self.quiet = True
-        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+        os.dup2(os.open(os.devnull, os.O_WRONLY), self.file.fileno())
+
+    def write(self, report: RenderableType) -> None:
+        """Print a report; in a pipe or a file without the blanks that fill its lines up."""
+        if self.is_terminal:
+            self.print(report)
+            return
+        with self.capture() as capture:
+            self.print(report)
+        self.out("\n".join(line.rstrip(" ") for line in capture.get().split("\n")), end="", highlight=False)
 
 
-def answer_console() -> Console:
+def answer_console() -> AnswerConsole:
     """Console on stdout."""
     return _console(sys.stdout)
 
 
-def side_console() -> Console:
+def side_console() -> AnswerConsole:
     """Console on stderr."""
     return _console(sys.stderr)
 
@@ -56,15 +67,25 @@ def show(answer: RenderableType | dict[str, Any]) -> None:
         # Pure ASCII, so that no name carries a control code to a terminal.
         answer_console().out(json.dumps(answer, indent=2, ensure_ascii=True, allow_nan=False), highlight=False)
     else:
-        answer_console().print(answer)
+        answer_console().write(answer)
 
 
-def say(*words: str) -> None:
-    """Print a line of plain words and data on stdout."""
-    show(paragraph(" ".join(words)))
+def say(text: str) -> None:
+    """Print a line of words and data on stdout, unbroken, so that a command in it can be copied."""
+    answer_console().print(paragraph(text), soft_wrap=True)
 
 
-def _console(stream: IO[str]) -> Console:
+def command_line(*words: str) -> str:
+    """Write a command as it is typed, with quotation marks where the shell needs them."""
+    return subprocess.list2cmdline(words) if os.name == "nt" else shlex.join(words)
+
+
+def notify(text: str) -> None:
+    """Print a line of words and data on stderr."""
+    side_console().write(paragraph(text))
+
+
+def _console(stream: IO[str]) -> AnswerConsole:
     if isinstance(stream, io.TextIOWrapper):
         stream.reconfigure(errors="balancer-plain-signs")
     return AnswerConsole(file=stream, width=_width(stream), markup=False, highlight=False, emoji=False)

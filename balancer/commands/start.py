@@ -21,14 +21,16 @@ from balancer.commands.examples import ExampleCommand
 @click.option("--debug", is_flag=True, expose_value=False, help="Show the details of a fault in balancer.")
 def start(directory: str, is_example: bool, is_forced: bool) -> int:
     """Write a blank inventory and panel file into DIR, or with --example a filled one."""
-    from balancer.commands.screen import say
+    from balancer.commands.screen import command_line, say
     from balancer.files.starter import blank_files, example_files, write_files
 
     written = write_files(directory, example_files() if is_example else blank_files(), force=is_forced)
-    say("Written:", *written)
+    say(f"Written: {', '.join(written)}")
     if is_example:
         inventory, panel, scenarios = written
-        say("Next: balancer plan", inventory, "--panel", panel, "--scenarios", scenarios)
+        say(f"Next: {command_line('balancer', 'plan', inventory, '--panel', panel, '--scenarios', scenarios)}")
     else:
-        say("Fill them in, one row a circuit; then: balancer check", written[0], "--panel", written[1])
+        inventory, panel = written
+        say("Fill them in, one row a circuit.")
+        say(f"Next: {command_line('balancer', 'check', inventory, '--panel', panel)}")
     return 0

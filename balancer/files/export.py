@@ -6,6 +6,7 @@ import contextlib
 import os
 from collections.abc import Iterable, Mapping, Sequence
 from pathlib import Path
+from typing import NoReturn
 
 from balancer.errors import OptionError
 from balancer.files.circuit_cells import cells_of
@@ -49,7 +50,7 @@ def save_inventory(
     OptionError
         When the file may not be written, or cannot be.
     """
-    target = _target(path, installation.inventory_file, force=force)
+    target = check_target(path, (installation.inventory_file,), force=force)
     # Excel takes text beyond ASCII for UTF-8 only behind a byte order mark; plain ASCII needs none.
     text = inventory_text(installation, as_left, removed_spares)
     data = text.encode("utf-8" if text.isascii() else "utf-8-sig")
@@ -99,26 +100,45 @@ def _comment(text: str) -> str:
     return _quoted(f"{COMMENT} {''.join(character if character.isprintable() else ' ' for character in text)}")
 
 
-def _target(path: FilePath, inventory_file: str, *, force: bool) -> Path:
+def check_target(path: FilePath, inputs: Sequence[str], *, force: bool = False) -> Path:
+    """Find the file that a name stands for, or say why nothing can be saved there.
+
+    Raises
+    ------
+    OptionError
+        When the file may not be written, or cannot be.
+    """
     name = os.fspath(path)
-    if name == STANDARD_INPUT or Path(name).suffix.casefold() in _WORKBOOKS:
-        problem = f"{name} is no name for a CSV file"
-        raise OptionError(problem, "give a file name that ends in .csv")
-    # A link is written through, not replaced.
-    target = Path(os.path.realpath(name))
-    if target == Path(os.path.realpath(inventory_file)) or _is_same_file(target, inventory_file):
-        problem = f"{name} is the inventory itself, which is never overwritten"
-        raise OptionError(problem, _OTHER_NAME)
-    if target.exists() and not target.is_file():
-        problem = f"{name} is no file"
-        raise OptionError(problem, _OTHER_NAME)
-    if target.exists() and not force:
-        problem = f"{name} exists already"
-        raise OptionError(problem, f"{_OTHER_NAME}, or add --force to replace it")
+    if name in ("", STANDARD_INPUT) or Path(name).suffix.casefold() in _WORKBOOKS:
+        _refuse(f"{name or 'no name at all'} is no name for a CSV file", "give a file name that ends in .csv")
+    try:
+        # A link is written through, not replaced.
+        target = Path(os.path.realpath(name))
+        _check_free(target, name, inputs, force=force)
+    except (OSError, ValueError) as error:
+        _refuse(f"{name} cannot be written: {getattr(error, 'strerror', None) or error}", _OTHER_NAME)
     return target
 
 
+def _check_free(target: Path, name: str, inputs: Sequence[str], *, force: bool) -> None:
+    for each in inputs:
+        if each != STANDARD_INPUT and (target == Path(os.path.realpath(each)) or _is_same_file(target, each)):
+            _refuse(f"{name} is one of the files read, which are never overwritten", _OTHER_NAME)
+    if target.exists() and not target.is_file():
+        _refuse(f"{name} is no file", _OTHER_NAME)
+    if target.exists() and not force:
+        _refuse(f"{name} exists already", f"{_OTHER_NAME}, or add --force to replace it")
+    if not target.parent.is_dir():
+        _refuse(f"{name} cannot be written: there is no such directory", "name a directory that exists")
+    if not os.access(target.parent, os.W_OK):
+        _refuse(f"{name} cannot be written: the directory may not be written to", "name another directory")
+
+
+def _refuse(problem: str, remedy: str) -> NoReturn:
+    raise OptionError(problem, remedy)
+
+
 def _is_same_file(target: Path, other: str) -> bool:
-    with contextlib.suppress(OSError):
+    with contextlib.suppress(OSError, ValueError):
         return target.samefile(other)
     return False

@@ -61,3 +61,14 @@ def test_other_threads_listen_to_nothing() -> None:
     thread.start()
     thread.join()
     assert seen == [before]
+
+
+def test_a_job_that_ignores_ctrl_c_goes_on_ignoring_it() -> None:
+    before = signal.signal(signal.SIGINT, signal.SIG_IGN)
+    try:
+        clock = Clock()
+        with clock.listening():
+            signal.raise_signal(signal.SIGINT)
+        assert clock.stop is Stop.NONE
+    finally:
+        signal.signal(signal.SIGINT, before)

@@ -1,6 +1,8 @@
+import signal
+
 import pytest
 
-from balancer.arrange.results import Options
+from balancer.arrange.results import Options, Stop
 from balancer.arrange.tradeoff import trade_landings
 from balancer.electrical.scenario_sets import connected_scenarios
 from balancer.errors import InfeasibleError
@@ -30,3 +32,13 @@ def test_a_curve_without_refusals_says_so(installation, circuit):
 def test_nothing_fits_under_any_cap(pair_on_one_leg):
     with pytest.raises(InfeasibleError):
         trade_landings(pair_on_one_leg, connected_scenarios(pair_on_one_leg), Options(), [0])
+
+
+def test_what_was_cut_off_is_not_said_to_be_impossible(pair_on_one_leg):
+    def caps():
+        yield 0
+        signal.raise_signal(signal.SIGINT)
+        yield 1
+
+    curve = trade_landings(pair_on_one_leg, connected_scenarios(pair_on_one_leg), Options(), caps())
+    assert (curve.points, curve.refused, curve.stop) == ((), (0,), Stop.INTERRUPTED)

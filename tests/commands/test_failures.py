@@ -106,7 +106,14 @@ def test_usage_problems_name_the_help_of_their_command() -> None:
         pytest.param(["--aim", "voltage"], id="unknown aim"),
         pytest.param(["--scenarios", "a.csv", "--profiles", "b.csv"], id="scenarios with profiles"),
         pytest.param(["--force"], id="force without save"),
+        pytest.param(["--landings", "99999999999999999999"], id="more landings than any panel has"),
+        pytest.param(["--panel", "-", "--scenarios", "-"], id="two files from standard input"),
         pytest.param(["--save", "no/such/place/x.csv"], id="save nowhere"),
+        pytest.param(["--save", ""], id="save without a name"),
+        pytest.param(["--save", "-"], id="save to standard output"),
+        pytest.param(["--save", "left.xlsx"], id="save as a workbook"),
+        pytest.param(["--save", "."], id="save over a directory"),
+        pytest.param(["--save", "n" * 300 + ".csv"], id="save under an endless name"),
     ],
 )
 def test_options_that_make_no_sense_end_with_two(run: Run, house: Path, arguments: list[str]) -> None:
@@ -114,3 +121,17 @@ def test_options_that_make_no_sense_end_with_two(run: Run, house: Path, argument
     assert result.exit_code == 2
     assert result.stdout == ""
     assert "The command line is wrong" in result.stderr
+
+
+@pytest.mark.parametrize("arguments", [["--save", "left.xlsx"], ["--save", "-"], ["--panel", "-", "--scenarios", "-"]])
+def test_a_wrong_command_line_is_refused_before_anything_is_read(
+    run: Run, monkeypatch: pytest.MonkeyPatch, arguments: list[str]
+) -> None:
+    fail_with(monkeypatch, AssertionError("read"))
+    assert run("plan", "house.csv", *arguments).exit_code == 2
+
+
+def test_a_curve_without_a_point_is_no_answer(run: Run, house: Path) -> None:
+    result = run("tradeoff", house, "--time-limit", "0.000001", "--json")
+    assert result.exit_code == 3
+    assert json.loads(result.stdout)["error"] == "The limit was reached before any arrangement was found"

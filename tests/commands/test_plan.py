@@ -25,9 +25,19 @@ class StandInPlanner:
         self.stop, self.error, self.moves = stop, error, dict(move.split("->") for move in moves)
         self.asked: list[Options] = []
         self.caps: tuple[int, ...] = ()
+        self.press_ctrl_c = stop is Stop.INTERRUPTED
 
-    def plan(self, installation: Installation, scenarios: Scenarios, options: Options, progress: object) -> Plan:
+    def plan(
+        self,
+        installation: Installation,
+        scenarios: Scenarios,
+        options: Options,
+        progress: object,
+        on_interrupt: Callable[[], None],
+    ) -> Plan:
         self.asked.append(options)
+        if self.press_ctrl_c:
+            on_interrupt()
         if self.error is not None:
             raise self.error
         as_left = installation.as_found | {label: parse_landing(place) for label, place in self.moves.items()}
@@ -61,7 +71,10 @@ class StandInPlanner:
         options: Options,
         landings: Sequence[int],
         progress: object,
+        on_interrupt: Callable[[], None],
     ) -> Tradeoff:
+        if self.press_ctrl_c:
+            on_interrupt()
         self.asked.append(options)
         self.caps = tuple(landings)
         peaks = PanelCurrents(installation, scenarios).peaks(installation.as_found)
@@ -217,7 +230,7 @@ def test_a_finished_plan_is_shown_when_what_follows_is_interrupted(
     planner = stand_in(monkeypatch, StandInPlanner(moves=MOVES))
     monkeypatch.setattr(
         "balancer.arrange.tradeoff.trade_landings",
-        lambda *_: Tradeoff(points=(), flat_from=None, stop=Stop.INTERRUPTED),
+        lambda *_, **__: Tradeoff(points=(), flat_from=None, stop=Stop.INTERRUPTED),
     )
     result = run("plan", house)
     assert len(planner.asked) == 1
@@ -230,7 +243,7 @@ def test_a_plan_is_shown_where_fewer_landings_do_not_fit(
 ) -> None:
     stand_in(monkeypatch, StandInPlanner(moves=MOVES))
 
-    def refuse(*_: object) -> Tradeoff:
+    def refuse(*_: object, **__: object) -> Tradeoff:
         raise InfeasibleError(["at most 1 landings may change"])
 
     monkeypatch.setattr("balancer.arrange.tradeoff.trade_landings", refuse)

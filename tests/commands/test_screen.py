@@ -1,13 +1,19 @@
 import io
+import os
+import shlex
 import subprocess
 import sys
+from collections.abc import Callable
 from pathlib import Path
 
 import pytest
+from click.testing import Result
 from rich.table import Table
 from rich.text import Text
 
-from balancer.commands.screen import answer_console, show
+from balancer.commands.screen import answer_console, command_line, show
+
+Run = Callable[..., Result]
 
 
 def stream(monkeypatch: pytest.MonkeyPatch, encoding: str) -> io.BytesIO:
@@ -78,3 +84,28 @@ def test_a_reader_who_leaves_early_causes_no_traceback(house: Path) -> None:
         process.stdout.close()
         assert process.stderr.read() == b""
     assert process.returncode == 0
+
+
+def test_lines_in_a_pipe_carry_no_trailing_blanks(monkeypatch: pytest.MonkeyPatch) -> None:
+    raw = stream(monkeypatch, "utf-8")
+    table = Table("circuit", "was", box=None)
+    table.add_row("kitchen", "")
+    show(table)
+    assert [line.strip() for line in raw.getvalue().decode().splitlines()] == ["circuit  was", "kitchen"]
+    assert not any(line.endswith(" ") for line in raw.getvalue().decode().splitlines())
+
+
+def test_a_problem_report_in_a_pipe_carries_no_trailing_blanks(run: Run, house: Path) -> None:
+    result = run("plan", house, "--landings", "-1")
+    assert result.exit_code == 2
+    assert not any(line.endswith(" ") for line in result.stderr.splitlines())
+
+
+def test_a_command_to_copy_is_quoted_and_unbroken(run: Run, tmp_path: Path) -> None:
+    folder = tmp_path / ("long " * 20 + "'name")
+    result = run("start", folder)
+    line = next(line for line in result.stdout.splitlines() if line.startswith("Next: "))
+    inventory, panel = (str(folder / name) for name in ("inventory.csv", "panel.toml"))
+    assert line == f"Next: {command_line('balancer', 'check', inventory, '--panel', panel)}"
+    if os.name != "nt":
+        assert shlex.split(line)[1:] == ["balancer", "check", inventory, "--panel", panel]
