@@ -9,9 +9,10 @@ from dataclasses import dataclass
 from ortools.sat.python import cp_model
 
 from balancer.arrange.clock import Clock
+from balancer.arrange.limits import Hold
 from balancer.arrange.results import Options
 from balancer.arrange.seating import SeatModel, row_limits_a
-from balancer.arrange.seats import Hold, build_units
+from balancer.arrange.seats import build_units
 from balancer.arrange.solve import SolveStatus, solve
 from balancer.errors import InfeasibleError, NoAnswerInTime
 from balancer.panel import Installation, Role, format_landing

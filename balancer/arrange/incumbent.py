@@ -11,8 +11,9 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from balancer.arrange.choices import Answer, Counter
 from balancer.arrange.clock import Clock
-from balancer.arrange.legs import Answer, ComplexMatrix, Counter, FloatMatrix, LegProblem, Rows
+from balancer.arrange.legs import ComplexMatrix, FloatMatrix, LegProblem, Rows
 from balancer.arrange.search import Cap
 
 _SEED = 20

@@ -8,8 +8,9 @@ from dataclasses import dataclass
 import numpy as np
 from ortools.sat.python import cp_model
 
+from balancer.arrange.choices import Answer, Counter
 from balancer.arrange.clock import Clock
-from balancer.arrange.legs import Answer, Counter, LegProblem, Rows
+from balancer.arrange.legs import LegProblem, Rows
 from balancer.arrange.seating import SeatModel, row_limits_a
 from balancer.arrange.solve import SolveStatus, solve
 

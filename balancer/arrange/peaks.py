@@ -5,8 +5,9 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import dataclass, field
 
+from balancer.arrange.choices import Answer
 from balancer.arrange.incumbent import Heuristic
-from balancer.arrange.legs import Answer, Rows, mirror_choice
+from balancer.arrange.legs import Rows, mirror_choice
 from balancer.arrange.results import ObjectiveName, ObjectiveResult
 from balancer.arrange.search import STEP_A, Budget, LegSearch
 from balancer.arrange.solve import SolveStatus

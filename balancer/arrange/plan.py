@@ -8,11 +8,12 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from balancer.arrange.canonical import in_canonical_order
+from balancer.arrange.choices import Answer, Counter
 from balancer.arrange.clock import Clock
 from balancer.arrange.conflict import explain_no_seats
 from balancer.arrange.incumbent import Heuristic
 from balancer.arrange.leg_model import LegModel
-from balancer.arrange.legs import Answer, Counter, build_leg_problem
+from balancer.arrange.legs import build_leg_problem
 from balancer.arrange.placements import landing_effort
 from balancer.arrange.results import Aim, ObjectiveName, ObjectiveResult, Options, Plan, ProgressListener
 from balancer.arrange.search import Cap

@@ -15,7 +15,8 @@ from dataclasses import dataclass, field
 import numpy as np
 from numpy.typing import NDArray
 
-from balancer.arrange.legs import Answer, Counter, FloatMatrix, LegProblem, Rows, mirror_choice
+from balancer.arrange.choices import Answer, Counter
+from balancer.arrange.legs import FloatMatrix, LegProblem, Rows, mirror_choice
 
 STEP_A = 1e-4
 """A better answer must be better by this [A]; what is closer counts as equal."""

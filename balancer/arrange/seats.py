@@ -7,35 +7,22 @@ circuits joined by `tied`. All that forbids a seat is judged here, so that the a
 from __future__ import annotations
 
 from collections.abc import Iterable, Iterator, Mapping, Sequence
-from dataclasses import dataclass, field
-from enum import StrEnum
+from dataclasses import dataclass
 
 from balancer.arrange.grouping import canonical_key, circuits_to_mend, group_circuits, shared_neutral_pairs
+from balancer.arrange.limits import Hold, Limits
 from balancer.arrange.moves import beside_moves, pair_moves, rigid_moves, single_moves, stacked_moves
 from balancer.arrange.placements import (
     Part,
     Placement,
     Unit,
     conductors_moved,
-    longest_reach_in,
     scaled_effort,
     total_reach_in,
 )
 from balancer.arrange.results import Options
 from balancer.electrical.phasors import neutral_leg
 from balancer.panel import Arrangement, Circuit, Installation, Landing, Leg, Panel, Role, SupplySystem, Terminal
-
-
-class Hold(StrEnum):
-    """Kinds of constraints that keep a unit from a seat; the report names them when nothing fits."""
-
-    FIXED = "fixed"
-    REACH = "slack_in"
-    RESERVED = "reserved"
-    TANDEM = "tandem_spaces"
-    PLUG_ON = "plug_on_neutral"
-    BOLT_ON = "bolt_on"
-    STAB = "stab_a"
 
 
 def build_units(
@@ -79,13 +66,9 @@ class _Seating:
     options: Options
     ignored: frozenset[tuple[Hold, str]]
     idle: frozenset[str]
-    _tandem_spaces: frozenset[int] = field(init=False)
 
     def __post_init__(self) -> None:
-        panel = self.installation.panel
-        halves = {t.space for c in self.installation.circuits for t in c.landing if t.half}
-        # Nobody said where half-width breakers fit: only where one is already is it known to.
-        self._tandem_spaces = panel.tandem_spaces if panel.tandem_spaces is not None else frozenset(halves)
+        self._limits = Limits(self.installation, self.options, self.ignored)
         self._pairs = shared_neutral_pairs(self.installation)
         self._to_mend = circuits_to_mend(self.installation)
 
@@ -102,17 +85,14 @@ class _Seating:
                 seen[key] = self._placement(group, landings)
         found = tuple((circuit.label, circuit.landing) for circuit in group)
         placements = sorted(seen.values(), key=lambda p: (p.landings != found, *_placement_order(p)))
-        is_optional = all(circuit.role is Role.SPARE and not self._is_fixed(circuit) for circuit in group)
+        is_optional = all(circuit.role is Role.SPARE and not self._limits.is_fixed(circuit) for circuit in group)
         return Unit(group, tuple(placements), is_optional)
 
     def _stays(self, group: Sequence[Circuit]) -> bool:
         """Whether the unit keeps its place: fixed, or with a landed two-pole circuit in it."""
         if not _is_landed(group) or self._is_half_fixed_pair(group):
             return False
-        return any(self._is_fixed(c) or (c.poles == 2) for c in group) or self._is_beyond_mending(group)
-
-    def _is_fixed(self, circuit: Circuit) -> bool:
-        return (circuit.is_fixed or circuit.role.is_device) and (Hold.FIXED, circuit.label) not in self.ignored
+        return any(self._limits.is_fixed(c) or (c.poles == 2) for c in group) or self._is_beyond_mending(group)
 
     def _is_half_fixed_pair(self, group: Sequence[Circuit]) -> bool:
         """Tell a pair on one leg of which one may move: it goes beside the other."""
@@ -128,7 +108,7 @@ class _Seating:
         arrangements: list[Arrangement] = [{c.label: c.landing for c in group}]
         if self.options.turn_240:
             for circuit in group:
-                can_turn = circuit.volts.has_neutral and circuit.poles == 2 and not self._is_fixed(circuit)
+                can_turn = circuit.volts.has_neutral and circuit.poles == 2 and not self._limits.is_fixed(circuit)
                 if can_turn and not circuit.role.is_device:
                     turned = circuit.landing[::-1]
                     arrangements += [{**a, circuit.label: turned} for a in arrangements]
@@ -162,14 +142,14 @@ class _Seating:
             return
         others = [circuit for circuit in group if self._needs_place(circuit)]
         bodies: list[Arrangement] = [{c.label: c.landing for c in kept}]
-        if not any(self._is_fixed(c) or c.poles == 2 for c in kept):
+        if not any(self._limits.is_fixed(c) or c.poles == 2 for c in kept):
             bodies += rigid_moves(self.installation, kept)
         for body in bodies:
             yield from beside_moves(self.installation, body, others)
 
     def _needs_place(self, circuit: Circuit) -> bool:
         """Whether it is new, or of a pair on one leg and free to leave what it shares."""
-        return not circuit.is_landed or (circuit.label in self._to_mend and not self._is_fixed(circuit))
+        return not circuit.is_landed or (circuit.label in self._to_mend and not self._limits.is_fixed(circuit))
 
     def _must_mend(self, group: Sequence[Circuit]) -> bool:
         return any(circuit.label in self._to_mend for circuit in group)
@@ -184,13 +164,13 @@ class _Seating:
 
     def _is_allowed(self, group: Sequence[Circuit], landings: Mapping[str, Landing]) -> bool:
         moved = [c for c in group if landings[c.label] != c.landing]
-        if any(self._is_fixed(c) and c.is_landed for c in moved):
+        if any(self._limits.is_fixed(c) and c.is_landed for c in moved):
             return False
         if len(group) > 1 and not (self._keeps_pairs_whole(group, landings) and self._keeps_ties(group, landings)):
             return False
-        if not self._stays(group) and not self._tandems_fit(landings):
+        if not self._stays(group) and not self._limits.tandems_fit(landings):
             return False
-        return all(self._may_land(circuit, landings[circuit.label]) for circuit in moved)
+        return all(self._limits.may_land(circuit, landings[circuit.label]) for circuit in moved)
 
     def _keeps_pairs_whole(self, group: Sequence[Circuit], landings: Mapping[str, Landing]) -> bool:
         """Both hots of a shared neutral on opposite legs, and beside each other unless they stay as found."""
@@ -224,54 +204,6 @@ class _Seating:
         return (below_first is not None and below_first.number == second) or (
             below_second is not None and below_second.number == first
         )
-
-    def _tandems_fit(self, landings: Mapping[str, Landing]) -> bool:
-        """Keep half-width breakers where they fit; one found elsewhere must go, where it can."""
-        halves = [t.space for landing in landings.values() for t in landing if t.half]
-        return self._spaces_hold(halves, self._tandem_spaces, Hold.TANDEM)
-
-    def _may_land(self, circuit: Circuit, landing: Landing) -> bool:
-        spaces = [terminal.space for terminal in landing]
-        return (
-            self._is_open(spaces)
-            and self._is_within_reach(circuit, landing)
-            and self._plug_on_fits(circuit, spaces)
-            and self._bolt_on_fits(circuit, spaces)
-        )
-
-    def _is_open(self, spaces: Sequence[int]) -> bool:
-        if (Hold.RESERVED, "") in self.ignored:
-            return True
-        return not any(space in self.panel.reserved for space in spaces)
-
-    def _spaces_hold(self, spaces: Sequence[int], allowed: frozenset[int], hold: Hold) -> bool:
-        return (hold, "") in self.ignored or all(space in allowed for space in spaces)
-
-    def _is_within_reach(self, circuit: Circuit, landing: Landing) -> bool:
-        if self.options.splice or (Hold.REACH, circuit.label) in self.ignored:
-            return True
-        if circuit.slack_in is None or not circuit.landing or circuit.hot_conductors == 0:
-            return True
-        return longest_reach_in(self.panel, circuit.landing, landing) <= circuit.slack_in
-
-    def _plug_on_fits(self, circuit: Circuit, spaces: Sequence[int]) -> bool:
-        """Keep a plug-on-neutral breaker beside the neutral bar.
-
-        A GFCI or AFCI breaker found at the bar is taken for one unless its type says ``pigtail``.
-        """
-        allowed = self.panel.plug_on_neutral
-        kind = circuit.breaker_type.casefold()
-        was_at_bar = circuit.is_landed and all(t.space in allowed for t in circuit.landing)
-        needs_bar = "plug-on" in kind or "plug on" in kind
-        needs_bar = needs_bar or (circuit.has_gfci_or_afci and was_at_bar and "pigtail" not in kind)
-        return not (needs_bar and allowed) or self._spaces_hold(spaces, allowed, Hold.PLUG_ON)
-
-    def _bolt_on_fits(self, circuit: Circuit, spaces: Sequence[int]) -> bool:
-        """Keep bolted breakers on bolted spaces and plugged ones on the others; a new one is bought to fit."""
-        if not circuit.is_landed or (Hold.BOLT_ON, "") in self.ignored:
-            return True
-        was_bolted = circuit.landing[0].space in self.panel.bolt_on
-        return all((space in self.panel.bolt_on) == was_bolted for space in spaces)
 
     def _placement(self, group: Sequence[Circuit], landings: Mapping[str, Landing]) -> Placement:
         placed = [(circuit, landings[circuit.label]) for circuit in group]

@@ -7,7 +7,8 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from balancer.arrange.legs import Answer, Counter, LegProblem
+from balancer.arrange.choices import Answer, Counter
+from balancer.arrange.legs import LegProblem
 from balancer.arrange.peaks import SEAT_CHECK_WORK, close_peak
 from balancer.arrange.placements import EFFORT_SCALE
 from balancer.arrange.results import ObjectiveName, ObjectiveResult

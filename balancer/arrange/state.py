@@ -4,9 +4,10 @@ from __future__ import annotations
 
 from dataclasses import dataclass, field
 
+from balancer.arrange.choices import Answer, Counter
 from balancer.arrange.clock import Clock
 from balancer.arrange.leg_model import LegModel
-from balancer.arrange.legs import Answer, Counter, LegProblem
+from balancer.arrange.legs import LegProblem
 from balancer.arrange.results import ObjectiveName, Progress, ProgressListener
 from balancer.arrange.search import Cap, Found
 from balancer.arrange.seating import Seater, Seating

@@ -13,7 +13,8 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from balancer.arrange.legs import Answer, FloatMatrix, LegProblem, Rows, build_leg_problem
+from balancer.arrange.choices import Answer
+from balancer.arrange.legs import FloatMatrix, LegProblem, Rows, build_leg_problem
 from balancer.arrange.placements import Unit
 from balancer.electrical.scenarios import Scenarios
 from balancer.panel import Installation

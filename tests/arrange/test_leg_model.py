@@ -6,9 +6,10 @@ from collections.abc import Iterator
 import numpy as np
 import pytest
 
+from balancer.arrange.choices import Answer
 from balancer.arrange.clock import Clock
 from balancer.arrange.leg_model import LegModel
-from balancer.arrange.legs import Answer, LegProblem, build_leg_problem
+from balancer.arrange.legs import LegProblem, build_leg_problem
 from balancer.arrange.results import Options
 from balancer.arrange.seats import build_units
 from balancer.arrange.solve import SolveStatus

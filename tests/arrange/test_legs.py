@@ -104,6 +104,14 @@ def test_imbalance_repeats_the_neutral_at_equal_power_factors(
     assert problem_of(installation(motor, circuit("b", "2"))).does_imbalance_repeat_neutral is repeats
 
 
+def test_imbalance_does_not_repeat_the_neutral_where_export_cancels_the_sum(installation: Build, circuit: Make) -> None:
+    """5 A drawn and 5 A fed in: nothing in the neutral as found, 10 A once one of them changes legs, and no sum."""
+    panel = installation(circuit("load", "1"), circuit("roof", "2"))
+    shares = np.array([[1.0, -1.0]])
+    problem = build_leg_problem(panel, share_scenarios(panel, ["noon"], shares), build_units(panel, Options()))
+    assert not problem.does_imbalance_repeat_neutral
+
+
 def test_everything_on_is_one_row(installation: Build, circuit: Make) -> None:
     panel = installation(circuit("a", "1"), circuit("b", "2"))
     problem = build_leg_problem(panel, connected_scenarios(panel), build_units(panel, Options()))

@@ -6,7 +6,8 @@ from collections.abc import Callable, Iterator
 import numpy as np
 import pytest
 
-from balancer.arrange.legs import Answer, Counter, LegProblem, Rows, build_leg_problem
+from balancer.arrange.choices import Answer, Counter
+from balancer.arrange.legs import LegProblem, Rows, build_leg_problem
 from balancer.arrange.results import Options
 from balancer.arrange.search import STEP_A, Budget, Cap, Found, LegSearch, project
 from balancer.arrange.seats import build_units
