@@ -102,50 +102,40 @@ def _shortage(installation: Installation) -> InfeasibleError | None:
 
 def _constraints(installation: Installation, options: Options) -> list[_Constraint]:
     """Everything that could be released, what is easiest to release last."""
-    panel = installation.panel
     found = []
     for circuit in installation.circuits:
-        place = format_landing(circuit.landing)
         if circuit.is_fixed or circuit.role.is_device:
-            text = f'"{circuit.label}" is fixed in space {place}'
+            text = f'"{circuit.label}" is fixed in space {format_landing(circuit.landing)}'
             found.append(_Constraint(Hold.FIXED, circuit.label, text, "release it if it may move"))
-    panel_wide = [
-        (bool(panel.reserved), Hold.RESERVED, "some spaces are reserved", "free a reserved space"),
-        (
-            any(t.half for c in installation.circuits for t in c.landing),
-            Hold.TANDEM,
-            "half-width breakers may go only where tandem_spaces allows them",
-            "check which spaces take half-width breakers",
-        ),
-        (
-            bool(panel.plug_on_neutral),
-            Hold.PLUG_ON,
-            "plug-on-neutral breakers need a space beside the neutral bar",
-            "use a breaker with a neutral pigtail",
-        ),
-        (
-            bool(panel.bolt_on),
-            Hold.BOLT_ON,
-            "bolt-on breakers fit bolted spaces only",
-            "use a breaker made for the space",
-        ),
-        (
-            panel.stab_a is not None,
-            Hold.STAB,
-            f"the handle ratings of one row may add up to {panel.stab_a or 0:g} A at most (stab_a)",
-            "check the limit on the panel's label",
-        ),
-    ]
-    found += [_Constraint(hold, "", text, remedy) for applies, hold, text, remedy in panel_wide if applies]
+    found += _panel_wide(installation)
     for circuit in installation.circuits:
-        if circuit.slack_in is not None and circuit.landing and not options.splice:
-            text = f'the conductor of "{circuit.label}" reaches {circuit.slack_in:g} in from space'
-            text = f"{text} {format_landing(circuit.landing)}"
-            if math.isfinite(circuit.slack_in):
-                found.append(_Constraint(Hold.REACH, circuit.label, text, "allow splices with --splice"))
+        if circuit.slack_in is not None and math.isfinite(circuit.slack_in) and circuit.landing and not options.splice:
+            place = format_landing(circuit.landing)
+            text = f'the conductor of "{circuit.label}" reaches {circuit.slack_in:g} in from space {place}'
+            found.append(_Constraint(Hold.REACH, circuit.label, text, "allow splices with --splice"))
     if options.max_landings is not None:
-        text = f"at most {_count(options.max_landings)} may change"
+        text = f"at most {options.max_landings} landings may change"
         found.append(_Constraint(None, "", text, "allow more with --landings"))
+    return found
+
+
+def _panel_wide(installation: Installation) -> list[_Constraint]:
+    panel = installation.panel
+    found = []
+    if panel.reserved:
+        found.append(_Constraint(Hold.RESERVED, "", "some spaces are reserved", "free a reserved space"))
+    if any(t.half for c in installation.circuits for t in c.landing):
+        text = "half-width breakers may go only where tandem_spaces allows them"
+        found.append(_Constraint(Hold.TANDEM, "", text, "check which spaces take half-width breakers"))
+    if panel.plug_on_neutral:
+        text = "plug-on-neutral breakers need a space beside the neutral bar"
+        found.append(_Constraint(Hold.PLUG_ON, "", text, "use a breaker with a neutral pigtail"))
+    if panel.bolt_on:
+        text = "bolt-on breakers fit bolted spaces only"
+        found.append(_Constraint(Hold.BOLT_ON, "", text, "use a breaker made for the space"))
+    if panel.stab_a is not None:
+        text = f"the handle ratings of one row may add up to {panel.stab_a:g} A at most (stab_a)"
+        found.append(_Constraint(Hold.STAB, "", text, "check the limit on the panel's label"))
     return found
 
 
