@@ -77,13 +77,18 @@ def _wants_traceback(words: list[str]) -> bool:
 
 
 def _report(failure: Failure, *, as_json: bool) -> int:
-    from balancer.commands.screen import show, side_console
+    from balancer.commands.screen import discard, show, side_console
     from balancer.reports.document import error_document
     from balancer.reports.problems import problems_report
 
     side_console().write(problems_report(failure.headline, failure.problems, closing=failure.closing))
-    if as_json:
+    if not as_json:
+        return failure.exit_code
+    try:
         show(error_document(failure.headline, failure.problems))
+    except OSError:
+        # The failure was most likely this one: stdout takes nothing any more.
+        discard(sys.stdout)
     return failure.exit_code
 
 

@@ -84,5 +84,5 @@ def _say_waiting(files: InputFiles) -> None:
     """Say that a file is awaited from the keyboard, so that nobody takes the wait for a hang."""
     from balancer.commands.screen import notify
 
-    if STANDARD_INPUT in files.names and sys.stdin.isatty():
+    if STANDARD_INPUT in files.names and sys.stdin is not None and sys.stdin.isatty():
         notify("Waiting for standard input: end it with Ctrl-D (on Windows Ctrl-Z, then Enter).")

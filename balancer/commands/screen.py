@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import codecs
+import contextlib
 import io
 import json
 import os
@@ -18,6 +19,9 @@ from balancer.reports.text import paragraph
 PIPE_WIDTH = 80
 WIDEST = 100
 """Lines longer than this are hard to read, however wide the window."""
+
+_NOWHERE = io.StringIO()
+"""Takes what is written to a stream that the shell has closed."""
 
 _PLAIN = {"\u2026": "~", "\u00b1": "+", "\u2502": "|", "\u250c": "/", "\u2514": "\\", "\u2500": "-", "\u2013": "-"}
 
@@ -39,7 +43,7 @@ class AnswerConsole(Console):
     def on_broken_pipe(self) -> None:
         """Throw the rest away; the exit code still says what the answer was."""
         self.quiet = True
-        os.dup2(os.open(os.devnull, os.O_WRONLY), self.file.fileno())
+        discard(self.file)
 
     def write(self, report: RenderableType) -> None:
         """Print a report; in a pipe or a file without the blanks that fill its lines up."""
@@ -51,14 +55,20 @@ class AnswerConsole(Console):
         self.out("\n".join(line.rstrip(" ") for line in capture.get().split("\n")), end="", highlight=False)
 
 
+def discard(stream: IO[str]) -> None:
+    """Throw away what a stream still holds and gets: its reader has gone, or its disk is full."""
+    with contextlib.suppress(OSError, ValueError):
+        os.dup2(os.open(os.devnull, os.O_WRONLY), stream.fileno())
+
+
 def answer_console() -> AnswerConsole:
     """Console on stdout."""
-    return _console(sys.stdout)
+    return _console(sys.stdout or _NOWHERE)
 
 
 def side_console() -> AnswerConsole:
     """Console on stderr."""
-    return _console(sys.stderr)
+    return _console(sys.stderr or _NOWHERE)
 
 
 def show(answer: RenderableType | dict[str, Any]) -> None:

@@ -27,15 +27,15 @@ def check_unique_labels(rows: Sequence[InventoryRow]) -> None:
             row.report(CIRCUIT, f"line {line} has this label already", "give every circuit a label of its own")
 
 
-def check_shared_neutrals(rows: Sequence[InventoryRow]) -> None:
-    """Report a shared neutral on a two-pole circuit, and one with a single circuit."""
+def check_shared_neutrals(rows: Sequence[InventoryRow], *, are_all: bool = True) -> None:
+    """Report a shared neutral on a two-pole circuit, and, where these are all rows, one with a single circuit."""
     for label_rows in _groups(rows, neutral_label):
         for row in label_rows:
             volts = row.get(VOLTS)
             if volts is not None and volts.poles == 2:
                 problem = "a two-pole circuit has its own neutral"
                 row.report(SHARED_NEUTRAL, problem, "label the 120 V circuits that share one, or correct volts")
-        if len(label_rows) == 1 and not label_rows[0].is_faulty(SHARED_NEUTRAL):
+        if are_all and len(label_rows) == 1 and not label_rows[0].is_faulty(SHARED_NEUTRAL):
             problem = "no other circuit has this label"
             remedy = "give the partner the same label, or write none where it has its own neutral"
             label_rows[0].report(SHARED_NEUTRAL, problem, remedy)

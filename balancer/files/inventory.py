@@ -39,6 +39,7 @@ def read_inventory(path: FilePath, panel_path: FilePath | None = None) -> Instal
         inventory = _read_rows(path)
         panel = panel if panel is not None or panel_path is not None else _assumed_panel(inventory.rows)
         _check_rows(inventory.rows, panel)
+        check_shared_neutrals(inventory.rows, are_all=not inventory.table.misfits)
         loads = [read_row_load(row, panel) for row in inventory.rows]
         inventory.problems.raise_if_any()
     except InputError as error:
@@ -71,10 +72,11 @@ def _read_rows(path: FilePath) -> _Inventory:
     _check_header(sheet, problems)
     problems.raise_if_any()
     table = build_table(sheet, problems)
+    if not table.has_sound_header:
+        problems.raise_if_any()
     if not table.rows:
         problems.add(Place(table.header_line), "no circuit follows the header", "write a line for every circuit")
-    problems.raise_if_any()
-    return _Inventory(table, tuple(InventoryRow(table, row, problems) for row in table.rows), problems)
+    return _Inventory(table, tuple(InventoryRow(table, row, problems) for row in table.fitting_rows), problems)
 
 
 def _check_header(sheet: Sheet, problems: ProblemList) -> None:
@@ -110,7 +112,6 @@ def _check_rows(rows: Sequence[InventoryRow], panel: Panel | None) -> None:
         if panel is not None:
             check_place(row, panel)
     check_collisions(rows)
-    check_shared_neutrals(rows)
 
 
 def _notices(inventory: _Inventory, panel: Panel) -> tuple[str, ...]:

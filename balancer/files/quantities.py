@@ -10,7 +10,10 @@ from typing import NoReturn
 _NUMBER = r"(?:[0-9]+(?:[.,][0-9]*)?|[.,][0-9]+)"
 _QUANTITY = re.compile(rf"({_NUMBER})\s*([^\d\s.,][^\d]*)?", re.ASCII)
 _NEGATIVE = re.compile(rf"[-\u2212]\s*({_NUMBER}).*", re.ASCII)
-_THOUSANDS = re.compile(r"[1-9][0-9]{0,2},[0-9]{3}", re.ASCII)
+_THOUSANDS = re.compile(r"[1-9][0-9]{0,2}[.,][0-9]{3}", re.ASCII)
+"""Where the comma is for decimals the point may be for thousands, and the other way round."""
+_ONE = "1.000"
+"""A power factor or a share with three decimals; a load of a thousand watts taken for one is told by its size."""
 
 
 @dataclass(frozen=True)
@@ -80,9 +83,15 @@ def read_number(cell: Cell) -> tuple[float, str]:
     digits, unit = match[1], (match[2] or "").strip().casefold()
     if "," in digits and not cell.has_decimal_comma:
         refuse("has a comma in its number", "write a decimal point and no thousands separator, such as 1500 or 12.5")
-    if _THOUSANDS.fullmatch(digits):
-        refuse("may mean thousands or decimals", f"write {digits.replace(',', '')} or {digits.rstrip('0')}")
+    if cell.has_decimal_comma and digits != _ONE and _THOUSANDS.fullmatch(digits):
+        refuse("may mean thousands or decimals", f"write {re.sub('[.,]', '', digits)} or {_as_decimals(digits)}")
     return float(digits.replace(",", ".")), unit
+
+
+def _as_decimals(digits: str) -> str:
+    """Write a number so that nobody takes its decimals for thousands: with fewer of them or with one more."""
+    shorter = digits.rstrip("0").rstrip(".,")
+    return f"{digits}0" if shorter == digits else shorter
 
 
 @dataclass(frozen=True)

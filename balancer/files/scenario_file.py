@@ -14,7 +14,7 @@ from balancer.files.quantities import Cell, CellError, read_number, refuse
 from balancer.files.sheet_file import read_sheet
 from balancer.files.source import FilePath
 from balancer.files.table import Table, TableRow, build_table
-from balancer.files.words import did_you_mean
+from balancer.files.words import nearest_word
 from balancer.panel import Installation
 
 SCENARIO_COLUMN = "scenario"
@@ -37,7 +37,8 @@ def read_scenarios(path: FilePath, installation: Installation) -> Scenarios:
     problems.raise_if_any()
     table = build_table(sheet, problems, key=str.casefold)
     headers = _match_columns(table, installation, problems)
-    problems.raise_if_any()
+    if any(problem.line == table.header_line for problem in problems.in_line_order):
+        problems.raise_if_any()
     reader = _ShareReader(table, installation, headers, problems)
     names, shares = reader.names(), reader.shares()
     problems.raise_if_any()
@@ -55,10 +56,16 @@ def _match_columns(table: Table, installation: Installation, problems: ProblemLi
     folded_labels = [SCENARIO_COLUMN, *(label.casefold() for label in labels)]
     for folded, name in by_folded.items():
         if folded not in folded_labels:
-            remedy = did_you_mean(name, [SCENARIO_COLUMN, *labels])
+            nearest = nearest_word(name, [SCENARIO_COLUMN, *labels])
+            remedy = (
+                f"did you mean {nearest}?" if nearest else "write a label as the inventory does, or delete the column"
+            )
             problems.add(Place(table.header_line, name), "no circuit of the inventory has this label", remedy)
     for circuit in installation.circuits:
-        if circuit.carries_load and circuit.label.casefold() not in by_folded:
+        if circuit.label.casefold() == SCENARIO_COLUMN:
+            problem = f"the circuit {circuit.label} is called like the column of the scenarios' names"
+            problems.add(place, problem, "give the circuit another label in the inventory")
+        elif circuit.carries_load and circuit.label.casefold() not in by_folded:
             remedy = "add a column for it, with 0 where it does not run"
             problems.add(place, f"the circuit {circuit.label} has no column", remedy)
     return {label: by_folded[label.casefold()] for label in labels if label.casefold() in by_folded}
@@ -79,7 +86,7 @@ class _ShareReader:
         if not self.table.rows:
             remedy = "write a line for every scenario"
             self.problems.add(Place(self.table.header_line), "no scenario follows the header", remedy)
-        for row in self.table.rows:
+        for row in self.table.fitting_rows:
             name = row.cells[header]
             line = first_lines.setdefault(name.casefold(), row.line)
             if not name:
@@ -87,13 +94,14 @@ class _ShareReader:
             elif line != row.line:
                 remedy = "give every scenario a name of its own"
                 self.problems.add(Place(row.line, header, name), f"line {line} has this name already", remedy)
-        return tuple(row.cells[header] for row in self.table.rows)
+        return tuple(row.cells[header] for row in self.table.fitting_rows)
 
     def shares(self) -> FloatArray:
         shares = [
-            [self._share(row, circuit.label) for circuit in self.installation.circuits] for row in self.table.rows
+            [self._share(row, circuit.label) for circuit in self.installation.circuits]
+            for row in self.table.fitting_rows
         ]
-        return np.array(shares, dtype=float).reshape(len(self.table.rows), len(self.installation.circuits))
+        return np.array(shares, dtype=float).reshape(len(shares), len(self.installation.circuits))
 
     def _share(self, row: TableRow, label: str) -> float:
         """Share of a circuit; 0 where it carries no load or has been reported."""

@@ -18,7 +18,7 @@ _SAVE_AGAIN = "save it again as CSV UTF-8 or as plain text"
 def file_name(path: FilePath) -> str:
     """Name of a file in messages."""
     name = os.fspath(path)
-    return "standard input" if name == STANDARD_INPUT else name
+    return "standard input" if name == STANDARD_INPUT else name or "(no name)"
 
 
 def read_bytes(path: FilePath) -> bytes:
@@ -31,7 +31,7 @@ def read_bytes(path: FilePath) -> bytes:
     """
     name = os.fspath(path)
     try:
-        data = sys.stdin.buffer.read() if name == STANDARD_INPUT else Path(name).read_bytes()
+        data = _read_standard_input() if name == STANDARD_INPUT else _read_file(name)
     except FileNotFoundError:
         raise one_problem(file_name(path), "there is no such file", "check the name and the directory") from None
     except IsADirectoryError:
@@ -42,6 +42,17 @@ def read_bytes(path: FilePath) -> bytes:
     if not data.strip():
         raise one_problem(file_name(path), "is empty", "check the name, and that it was saved")
     return data
+
+
+def _read_standard_input() -> bytes:
+    # The shell may have closed it.
+    return sys.stdin.buffer.read() if sys.stdin is not None else b""
+
+
+def _read_file(name: str) -> bytes:
+    if not name:
+        raise FileNotFoundError
+    return Path(name).read_bytes()
 
 
 def decode(path: FilePath, data: bytes) -> str:

@@ -34,6 +34,16 @@ class Table:
     rows: tuple[TableRow, ...]
     has_decimal_comma: bool
     comments: tuple[SheetRow, ...]
+    misfits: frozenset[int] = frozenset()
+    """Lines of the rows that have been reported for having more or fewer cells than the header."""
+
+    has_sound_header: bool = True
+    """Every column has a name of its own."""
+
+    @property
+    def fitting_rows(self) -> tuple[TableRow, ...]:
+        """Rows whose cells stand under the right names."""
+        return tuple(row for row in self.rows if row.line not in self.misfits)
 
 
 def header_key(name: str) -> str:
@@ -49,15 +59,25 @@ def build_table(sheet: Sheet, problems: ProblemList, key: HeaderKey = header_key
     header, *body = sheet.rows
     width = _width(header)
     names = header.cells[:width]
-    _report_header(problems, header.line, names, key)
+    has_sound_header = _is_sound(problems, header.line, names, key)
     shapes = [_Shape(row, width) for row in body]
-    rows = []
+    rows, misfits = [], []
     for index, shape in enumerate(shapes):
         neighbours = shapes[max(0, index - 1) : index] + shapes[index + 1 : index + 2]
-        _report_shape(problems, shape, neighbours)
+        if not _fits(problems, shape, neighbours):
+            misfits.append(shape.row.line)
         padded = shape.row.cells + ("",) * width
         rows.append(TableRow(shape.row.line, dict(zip(names, padded, strict=False))))
-    return Table(sheet.file, header.line, names, tuple(rows), sheet.has_decimal_comma, sheet.comments)
+    return Table(
+        file=sheet.file,
+        header_line=header.line,
+        columns=names,
+        rows=tuple(rows),
+        has_decimal_comma=sheet.has_decimal_comma,
+        comments=sheet.comments,
+        misfits=frozenset(misfits),
+        has_sound_header=has_sound_header,
+    )
 
 
 def _width(header: SheetRow) -> int:
@@ -66,7 +86,8 @@ def _width(header: SheetRow) -> int:
     return filled[-1]
 
 
-def _report_header(problems: ProblemList, line: int, names: tuple[str, ...], key: HeaderKey) -> None:
+def _is_sound(problems: ProblemList, line: int, names: tuple[str, ...], key: HeaderKey) -> bool:
+    """Report columns without a name of their own; gives whether there are none."""
     seen: dict[str, str] = {}
     for number, name in enumerate(names, 1):
         if not name:
@@ -76,6 +97,7 @@ def _report_header(problems: ProblemList, line: int, names: tuple[str, ...], key
             problems.add(Place(line, name), f"this column stands twice (also as {seen[key(name)]})", remedy)
         else:
             seen[key(name)] = name
+    return len(seen) == len(names)
 
 
 @dataclass(frozen=True)
@@ -94,13 +116,16 @@ class _Shape:
         return max(0, self.width - len(self.row.cells))
 
 
-def _report_shape(problems: ProblemList, shape: _Shape, neighbours: list[_Shape]) -> None:
-    place = Place(shape.row.line)
+def _fits(problems: ProblemList, shape: _Shape, neighbours: list[_Shape]) -> bool:
+    """Report a row with more or fewer cells than the header; gives whether it has as many."""
     cells = f"this row has {len(shape.row.cells)} cells and the header {shape.width}"
     extra = next(shape.surplus, None)
     if extra is not None:
         remedy = "look for a separator too many; put a text that holds one into quotation marks"
         problems.add(Place(shape.row.line, value=extra), cells, remedy)
+        return False
     is_trimmed = shape.row.line >= _TRIMMED_FROM_LINE and any(n.lacking == shape.lacking for n in neighbours)
     if shape.lacking and not is_trimmed:
-        problems.add(place, cells, "look for a missing separator; write one for every blank cell too")
+        problems.add(Place(shape.row.line), cells, "look for a missing separator; write one for every blank cell too")
+        return False
+    return True

@@ -109,3 +109,26 @@ def test_a_command_to_copy_is_quoted_and_unbroken(run: Run, tmp_path: Path) -> N
     assert line == f"Next: {command_line('balancer', 'check', inventory, '--panel', panel)}"
     if os.name != "nt":
         assert shlex.split(line)[1:] == ["balancer", "check", inventory, "--panel", panel]
+
+
+@pytest.mark.skipif(os.name == "nt", reason="the shell's redirections")
+@pytest.mark.parametrize(
+    ("redirection", "exit_code"),
+    [("> /dev/full", 2), ("--json > /dev/full", 2), (">&-", 0), ("2>&-", 0), ("--json >&-", 0)],
+)
+def test_streams_that_take_nothing_are_no_fault_of_ours(house: Path, redirection: str, exit_code: int) -> None:
+    if "/dev/full" in redirection and not Path("/dev/full").exists():
+        pytest.skip("no full device here")
+    command = f"{shlex.quote(sys.executable)} -m balancer check {shlex.quote(str(house))} {redirection}"
+    done = subprocess.run(command, shell=True, capture_output=True, text=True, check=False)
+    assert done.returncode == exit_code
+    assert "Traceback" not in done.stderr
+    assert "fault" not in done.stderr
+
+
+@pytest.mark.skipif(os.name == "nt", reason="the shell's redirections")
+def test_a_closed_standard_input_is_empty(house: Path) -> None:
+    command = f"{shlex.quote(sys.executable)} -m balancer check - <&-"
+    done = subprocess.run(command, shell=True, capture_output=True, text=True, check=False)
+    assert done.returncode == 2
+    assert "is empty" in done.stderr

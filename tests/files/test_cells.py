@@ -6,7 +6,7 @@ from hypothesis import strategies as st
 
 from balancer.electrical.defaults import known_uses
 from balancer.files import cells
-from balancer.files.columns import COLUMNS, EFFORT, KWH_DAY, LOAD_A, LOAD_VA, LOAD_W, SLACK_IN, START_A, Column
+from balancer.files.columns import COLUMNS, EFFORT, KWH_DAY, LOAD_A, LOAD_VA, LOAD_W, PF, SLACK_IN, START_A, Column
 from balancer.files.quantities import Cell, CellError
 from balancer.panel import PowerFactor, Role, Volts, Wire, format_landing
 
@@ -240,3 +240,23 @@ def test_columns_have_unique_names_and_say_what_they_mean() -> None:
     assert len({column.name for column in COLUMNS}) == len(COLUMNS)
     assert all(column.meaning and column.default for column in COLUMNS)
     assert [column.name for column in COLUMNS if column.is_required] == ["circuit", "volts"]
+
+
+@pytest.mark.parametrize(
+    ("text", "remedy"),
+    [
+        pytest.param("12.500", "write 12500 or 12.5", id="twelve kilowatts or twelve watts"),
+        pytest.param("2.125", "write 2125 or 2.1250", id="no blank decimals to leave out"),
+        pytest.param("2,000", "write 2000 or 2", id="no decimals at all"),
+    ],
+)
+def test_what_may_be_thousands_is_asked_about_and_the_answer_is_taken(text: str, remedy: str) -> None:
+    assert error_of(LOAD_W, text, has_decimal_comma=True).remedy == remedy
+    for answer in remedy.removeprefix("write ").split(" or "):
+        assert LOAD_W.read(Cell(answer, has_decimal_comma=True)) > 0
+
+
+def test_three_decimals_are_taken_where_they_can_mean_nothing_else() -> None:
+    assert LOAD_W.read(Cell("12.500")) == 12.5
+    assert PF.read(Cell("1.000", has_decimal_comma=True)).value == 1.0
+    assert PF.read(Cell("0,950", has_decimal_comma=True)).value == 0.95

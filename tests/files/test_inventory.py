@@ -335,3 +335,18 @@ def circuits_or_problems(path: Path) -> tuple[object, ...]:
         return read_inventory(path).circuits
     except InputError as error:
         return error.problems
+
+
+def test_a_row_that_does_not_fit_the_header_hides_no_other_problem(read: Read) -> None:
+    text = (
+        "circuit,space,volts,load_a,shared_neutral\n"
+        "fan,1,120,-3,pair\n"
+        "pump,3,120,4\n"
+        "well,5,120,4,pair,x\n"
+        "lamp,6,130,4,none\n"
+    )
+    with pytest.raises(InputError) as caught:
+        read(text)
+    told = [(problem.line, problem.column) for problem in caught.value.problems]
+    # Nothing is said of the pair: its partner may be in a row that was not read.
+    assert told == [(2, "load_a"), (3, None), (4, None), (5, "volts")]

@@ -131,3 +131,14 @@ def names_or_problems(path: Path, house: Installation) -> tuple[object, ...]:
         return tuple(read_scenarios(path, house).names)
     except InputError as error:
         return error.problems
+
+
+def test_a_row_that_does_not_fit_the_header_hides_no_other_problem(tmp_path: Path, house: Installation) -> None:
+    problems = problems_of(tmp_path, house, "scenario,heater,cooler,range\na,1,0\nb,1,2,1\n")
+    assert [(problem.line, problem.column) for problem in problems] == [(2, None), (3, "cooler")]
+
+
+def test_circuit_called_like_the_column_of_names_is_told(read: Read, tmp_path: Path) -> None:
+    house = read("circuit,space,volts,load_a\nScenario,1,120,5\nfan,3,120,4\n")
+    (only,) = problems_of(tmp_path, house, "scenario,fan\nall,1\n")
+    assert "another label" in only.remedy
