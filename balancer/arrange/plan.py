@@ -34,9 +34,6 @@ _ORDER = {
     Aim.LEGS: (ObjectiveName.HEAVY_LEG, ObjectiveName.NEUTRAL, ObjectiveName.IMBALANCE),
 }
 
-FIRST_OBJECTIVE = {aim: names[0] for aim, names in _ORDER.items()}
-"""The objective that comes first under each aim."""
-
 
 def plan_arrangement(
     installation: Installation,
@@ -124,9 +121,7 @@ class Planner:
             return [], []
         if self.scenarios.kind is not ScenarioKind.CONNECTED:
             return [Cap(self.problem.heavy_leg, main_a)], []
-        note = (
-            f"with everything on at once a leg may carry more than the {main_a:g} A main; that is not held against it"
-        )
+        note = f"Everything on at once is no state that the {main_a:g} A main must carry: its rating set no limit here."
         return [], [note]
 
     def stages(self) -> Stages:
@@ -215,6 +210,13 @@ class Planner:
     def plan(self) -> Plan:
         """Close every objective in turn and settle the seats."""
         stages = self.stages()
+        objectives = self.close_peaks(stages)
+        objectives += [stages.close_effort(), stages.close_mean()]
+        neutral = objectives[0] if self.options.aim is Aim.NEUTRAL else self._free_neutral(stages)
+        return self._plan(stages, objectives, neutral)
+
+    def close_peaks(self, stages: Stages) -> list[ObjectiveResult]:
+        """Close the amps objectives in the order of the aim, each held while the next is lowered."""
         objectives: list[ObjectiveResult] = []
         for name in _ORDER[self.options.aim]:
             if name is ObjectiveName.IMBALANCE and self.problem.does_imbalance_repeat_neutral:
@@ -222,9 +224,7 @@ class Planner:
             result = stages.close_peak(name)
             objectives.append(result)
             stages.hold(name, result.value + self.options.within_a)
-        objectives += [stages.close_effort(), stages.close_mean()]
-        neutral = objectives[0] if self.options.aim is Aim.NEUTRAL else self._free_neutral(stages)
-        return self._plan(stages, objectives, neutral)
+        return objectives
 
     def _free_neutral(self, stages: Stages) -> ObjectiveResult:
         """Lowest peak neutral with nothing else asked: what the report's bound speaks of when the legs come first."""

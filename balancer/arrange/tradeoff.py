@@ -6,7 +6,7 @@ from collections.abc import Callable, Sequence
 from dataclasses import replace
 
 from balancer.arrange.clock import Clock
-from balancer.arrange.plan import FIRST_OBJECTIVE, Planner
+from balancer.arrange.plan import Planner
 from balancer.arrange.results import Aim, Options, ProgressListener, Tradeoff, TradeoffPoint
 from balancer.arrange.verify import verify_arrangement
 from balancer.electrical.phasors import PanelCurrents
@@ -79,8 +79,7 @@ def trade_landings(  # noqa: PLR0913 - what plan_arrangement takes, and the land
 
 def _point(planner: Planner, cap: int) -> TradeoffPoint:
     stages = planner.stages()
-    result = stages.close_peak(FIRST_OBJECTIVE[planner.options.aim])
-    stages.hold(result.name, result.value)
+    result = planner.close_peaks(stages)[0]
     stages.close_effort()
     seating = planner.settled(stages)
     problems = verify_arrangement(planner.installation, planner.options, seating.arrangement, seating.removed)
