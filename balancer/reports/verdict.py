@@ -144,7 +144,7 @@ def tradeoff_notes(tradeoff: Tradeoff, aim: Aim, cured: Sequence[Finding]) -> li
     notes = []
     if tradeoff.points:
         first, others = _TABLE_ORDER[aim]
-        notes.append(f"Each line has the lowest {first}; {others} are what comes with it, not their lowest.")
+        notes.append(f"Each line has the lowest {first}; {others} are the lowest that go with it.")
     return [*notes, *_useless_text(tradeoff, aim), *_refused_text(tradeoff, cured)]
 
 

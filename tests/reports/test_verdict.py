@@ -98,7 +98,7 @@ def test_tradeoff_says_which_landings_buy_nothing(answer: PlanAnswer) -> None:
     points = tuple(replace(point, landings=cap, peak_neutral_a=value) for cap, value in figures.items())
     notes = " ".join(tradeoff_notes(Tradeoff(points=points, flat_from=None), Aim.NEUTRAL, ()))
     assert "3 landings buy nothing beyond 2." in notes
-    assert "imbalance and heavy leg are what comes with it" in notes
+    assert "imbalance and heavy leg are the lowest that go with it" in notes
 
 
 @pytest.mark.parametrize(
