@@ -129,16 +129,17 @@ class PanelCurrents:
             for shift in self._shifts(unknown, only_extreme=only_extreme):
                 yield Case(factors, total, np.asarray(base + shift, dtype=base.dtype))
 
-    def _shifts(self, unknown: NDArray[np.bool_], *, only_extreme: bool) -> list[FloatArray]:
-        """List what parts of unknown pole add to D, in every combination or with all on one leg."""
-        parts = [self.scenarios.neutral_a[:, c] for c in np.nonzero(unknown)[0] if self.scenarios.neutral_a[:, c].any()]
-        if not parts:
-            return [np.zeros(len(self.scenarios))]
+    def _shifts(self, unknown: NDArray[np.bool_], *, only_extreme: bool) -> Iterator[FloatArray]:
+        """Give what parts of unknown pole add to D, in every combination or with all on one leg."""
+        columns = (self.scenarios.neutral_a[:, c] for c in np.nonzero(unknown)[0])
+        parts = [column for column in columns if column.any()]
         if only_extreme or len(parts) > MOST_UNKNOWN:
-            together = np.sum(parts, axis=0)
-            return [together, -together]
-        signs = itertools.product((1.0, -1.0), repeat=len(parts))
-        return [np.sum([sign * part for sign, part in zip(each, parts, strict=True)], axis=0) for each in signs]
+            parts = [np.sum(parts, axis=0)] if parts else []
+        for signs in itertools.product((1.0, -1.0), repeat=len(parts)):
+            shift = np.zeros(len(self.scenarios))
+            for sign, part in zip(signs, parts, strict=True):
+                shift += sign * part
+            yield shift
 
     def currents(self, arrangement: Mapping[str, Landing]) -> LegCurrents:
         """Clamp-meter readings of an arrangement in every scenario."""

@@ -1,4 +1,4 @@
-"""Seeded panels as many hands in a hurry leave them: wrong pairs half fixed, ties across the panel, quads, newcomers."""
+"""Seeded panels as many hands in a hurry leave them: wrong pairs half fixed, ties across, quads and newcomers."""
 
 from __future__ import annotations
 
