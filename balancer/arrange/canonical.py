@@ -15,11 +15,16 @@ from balancer.electrical.scenarios import Scenarios
 from balancer.panel import Installation
 
 
-def in_canonical_order(installation: Installation, scenarios: Scenarios) -> tuple[Installation, Scenarios]:
-    """Sort circuits by place as found, then label, and scenarios by their currents."""
+def with_circuits_in_order(installation: Installation, scenarios: Scenarios) -> tuple[Installation, Scenarios]:
+    """Sort circuits by place as found, then label."""
     circuits = installation.circuits
     columns = sorted(range(len(circuits)), key=lambda index: canonical_key((circuits[index],)))
     neutral_a, line_a = (np.take(each, columns, axis=1) for each in (scenarios.neutral_a, scenarios.line_a))
-    rows = np.lexsort(np.concatenate([line_a, neutral_a], axis=1).T)
-    ordered = replace(scenarios, neutral_a=neutral_a, line_a=line_a).subset(rows.tolist())
-    return replace(installation, circuits=tuple(circuits[index] for index in columns)), ordered
+    ordered = replace(installation, circuits=tuple(circuits[index] for index in columns))
+    return ordered, replace(scenarios, neutral_a=neutral_a, line_a=line_a)
+
+
+def with_rows_in_order(scenarios: Scenarios) -> Scenarios:
+    """Sort scenarios by their currents."""
+    rows = np.lexsort(np.concatenate([scenarios.line_a, scenarios.neutral_a], axis=1).T)
+    return scenarios.subset(rows.tolist())

@@ -94,10 +94,11 @@ def _shortage(installation: Installation) -> InfeasibleError | None:
     if total <= usable:
         return None
     reserved = f" ({len(panel.reserved)} more are reserved)" if panel.reserved else ""
-    return InfeasibleError(
-        [f"the breakers need {total} spaces and the panel has {usable} to use{reserved}"],
-        ["use a larger panel or a subpanel, combine circuits, or leave some out"],
-    )
+    remedy = "use a larger panel or a subpanel, combine circuits, or leave some out"
+    if panel.is_assumed:
+        # No panel file was given, and the size is only that of the highest space in use.
+        remedy = "where it has more spaces, say how many in a panel file (--panel)"
+    return InfeasibleError([f"the breakers need {total} spaces and the panel has {usable} to use{reserved}"], [remedy])
 
 
 def _constraints(installation: Installation, options: Options) -> list[_Constraint]:

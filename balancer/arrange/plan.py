@@ -7,20 +7,21 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from balancer.arrange.canonical import in_canonical_order
+from balancer.arrange.canonical import with_circuits_in_order, with_rows_in_order
 from balancer.arrange.choices import Answer, Counter
 from balancer.arrange.clock import Clock
 from balancer.arrange.conflict import explain_no_seats
 from balancer.arrange.incumbent import Heuristic
 from balancer.arrange.leg_model import LegModel
 from balancer.arrange.legs import build_leg_problem
-from balancer.arrange.placements import landing_effort
+from balancer.arrange.placements import Unit, landing_effort
 from balancer.arrange.results import Aim, ObjectiveName, ObjectiveResult, Options, Plan, ProgressListener
 from balancer.arrange.search import Cap
 from balancer.arrange.seating import Seater, Seating
 from balancer.arrange.seats import build_units
 from balancer.arrange.solve import SolveStatus
 from balancer.arrange.stages import READINGS_TOLERANCE_A, SCENARIO_TOLERANCE_A, Stages
+from balancer.arrange.thin import FEW, Thinned
 from balancer.arrange.verify import verify_plan
 from balancer.electrical.phasors import PanelCurrents
 from balancer.electrical.scenarios import ScenarioKind, Scenarios
@@ -28,6 +29,9 @@ from balancer.errors import InfeasibleError, NoAnswerInTime
 from balancer.panel import Arrangement, Installation
 
 _FIRST_ANSWER_WORK_S = 60.0
+
+_CUT_SHARE = 0.75
+"""Scenarios are left out that cannot carry this share of the peak neutral of a first good arrangement."""
 
 _ORDER = {
     Aim.NEUTRAL: (ObjectiveName.NEUTRAL, ObjectiveName.IMBALANCE, ObjectiveName.HEAVY_LEG),
@@ -93,15 +97,41 @@ class Planner:
 
     def __post_init__(self) -> None:
         self._currents = PanelCurrents(self.installation, self.scenarios)
-        self._ordered, scenarios = in_canonical_order(self.installation, self.scenarios)
+        self._ordered, scenarios = with_circuits_in_order(self.installation, self.scenarios)
         units = build_units(self._ordered, self.options, idle=self._idle())
         if any(not unit.placements and not unit.is_optional for unit in units):
             raise explain_no_seats(self._ordered, self.options, self.clock)
         units = tuple(unit for unit in units if unit.placements)
-        self.problem = build_leg_problem(self._ordered, scenarios, units)
         self._seater = Seater(self.installation.panel, units, self.options.max_landings, self.clock)
+        self._thinned = Thinned(self._ordered, scenarios, units) if len(scenarios) > FEW else None
+        if self._thinned is None:
+            self._weigh(scenarios, units)
+        else:
+            self._weigh(self._thinned.heaviest(), units)
+            self._cut(_CUT_SHARE * self._first_peak())
+
+    def _weigh(self, scenarios: Scenarios, units: tuple[Unit, ...]) -> None:
+        """Set up the leg problem over some of the scenarios."""
+        self.problem = build_leg_problem(self._ordered, with_rows_in_order(scenarios), units)
         self._counters = self._all_counters()
         self._caps, self._notes = self._leg_limit()
+
+    def _first_peak(self) -> float:
+        """Peak neutral [A] over all scenarios of a first good arrangement, which planning then begins from."""
+        stages = self.stages()
+        heuristic = Heuristic(self.problem, self.problem.neutral, stages.caps, stages.counters)
+        for answer in heuristic.first_answers(self.clock):
+            if stages.seating(answer) is not None:
+                stages.answer = answer
+                break
+        self.start = self.settled(stages).arrangement
+        return self._currents.peaks(self.start).neutral.value_a
+
+    def _cut(self, level_a: float) -> None:
+        """Weigh only the scenarios that can carry more than a level in the neutral, or set the heavy leg's peak."""
+        assert self._thinned is not None, "only very many scenarios are cut"
+        self._thinned.cut_a = level_a
+        self._weigh(self._thinned.weighed(), self._thinned.units)
 
     def _idle(self) -> frozenset[str]:
         """Labels of circuits without line-to-neutral current in any scenario."""
@@ -136,6 +166,8 @@ class Planner:
             caps=list(self._caps),
             counters=list(self._counters),
             listener=self.listener,
+            scenario_count=len(self.scenarios),
+            thinned=self._thinned,
         )
 
     def _first_answer(self) -> Answer:
@@ -209,13 +241,26 @@ class Planner:
 
     def plan(self) -> Plan:
         """Close every objective in turn and settle the seats."""
-        stages = self.stages()
-        objectives = self.close_peaks(stages)
+        stages, objectives = self.closed()
         objectives += [stages.close_effort(), stages.close_mean()]
         neutral = objectives[0] if self.options.aim is Aim.NEUTRAL else self._free_neutral(stages)
         return self._plan(stages, objectives, neutral)
 
-    def close_peaks(self, stages: Stages) -> list[ObjectiveResult]:
+    def closed(self) -> tuple[Stages, list[ObjectiveResult]]:
+        """Close the amps objectives; where one falls below the cut, weigh the scenarios below it as well.
+
+        A scenario left out carries at most the cut, whatever the arrangement: above the cut it sets no peak.
+        """
+        while True:
+            stages = self.stages()
+            objectives = self._close_peaks(stages)
+            lowest = min((o.value for o in objectives if o.name is not ObjectiveName.HEAVY_LEG), default=0.0)
+            if self._thinned is None or lowest >= self._thinned.cut_a or self.clock.is_stopped:
+                return stages, objectives
+            self.start = self.settled(stages).arrangement
+            self._cut(_CUT_SHARE * lowest)
+
+    def _close_peaks(self, stages: Stages) -> list[ObjectiveResult]:
         """Close the amps objectives in the order of the aim, each held while the next is lowered."""
         objectives: list[ObjectiveResult] = []
         for name in _ORDER[self.options.aim]:
@@ -253,6 +298,7 @@ class Planner:
             removed_spares=seating.removed,
             stop=self.clock.stop,
             notes=tuple(self._notes),
+            search_rows=None if self._thinned is None else len(self.problem.cases[0].total),
         )
 
     def settled(self, stages: Stages) -> Seating:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -16,6 +17,7 @@ from balancer.arrange.search import Budget, Cap, Found, LegSearch
 from balancer.arrange.seating import Seating
 from balancer.arrange.solve import SolveStatus
 from balancer.arrange.state import State
+from balancer.arrange.thin import Thinned
 
 SCENARIO_TOLERANCE_A = 0.05
 READINGS_TOLERANCE_A = 0.01
@@ -29,7 +31,17 @@ _ROUNDING_A = 1e-9
 
 @dataclass
 class Stages(State):
-    """Closes the objectives, each under what the earlier ones hold."""
+    """Closes the objectives, each under what the earlier ones hold.
+
+    `thinned` has the scenarios that a mean is over, where the problem holds only some of them.
+    """
+
+    thinned: Thinned | None = None
+
+    def _mean_neutrals(self, answers: Sequence[Answer]) -> list[float]:
+        if self.thinned is not None:
+            return self.thinned.mean_neutrals(answers)
+        return [self.problem.mean_neutral(answer) for answer in answers]
 
     @property
     def effort(self) -> int:
@@ -107,11 +119,13 @@ class Stages(State):
         """Lowest mean neutral among what is left, then the canonical order among equals."""
         effort = self.effort
         search = LegSearch(self.problem, self.caps, self.counters, self._budget(), lambda answer: 0.0)
-        survivors = search.survivors(_MOST_SURVIVORS)
+        most = _MOST_SURVIVORS if self.thinned is None else min(_MOST_SURVIVORS, self.thinned.most_means)
+        survivors = search.survivors(most)
         if survivors is None:
-            value = self.problem.mean_neutral(self.answer)
-            return _mean_result(value, min(value, _least_mean(self.problem)), is_proven=False)
-        means = [self.problem.mean_neutral(answer) for answer in survivors]
+            (value,) = self._mean_neutrals([self.answer])
+            least = _least_mean(self.problem) if self.thinned is None else 0.0
+            return _mean_result(value, min(value, least), is_proven=False)
+        means = self._mean_neutrals(survivors)
         # Means that differ by less are one and the same: then the order of the choices decides.
         ranked = sorted(
             zip(means, survivors, strict=True), key=lambda pair: (round(pair[0], 7), tuple(pair[1].tolist()))
@@ -121,7 +135,7 @@ class Stages(State):
             if seating is not None and seating.effort <= effort:
                 self.answer = answer
                 break
-        value = self.problem.mean_neutral(self.answer)
+        (value,) = self._mean_neutrals([self.answer])
         seater = self.seater
         is_proven = not (self.clock.is_stopped or seater.has_given_up or seater.has_settled_for_more)
         return _mean_result(value, value if is_proven else min(value, *means), is_proven=is_proven)

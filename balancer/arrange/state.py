@@ -28,6 +28,8 @@ class State:
     caps: list[Cap] = field(default_factory=list)
     counters: list[Counter] = field(default_factory=list)
     listener: ProgressListener | None = None
+    scenario_count: int = 0
+    """All scenarios that planning is over, of which the problem may hold only those that matter."""
 
     def seating(self, answer: Answer) -> Seating | None:
         """Seats of an answer, the least effort first; None where it has none."""
@@ -36,7 +38,8 @@ class State:
     def report(self, name: ObjectiveName, best: float, bound: float) -> None:
         """Tell the listener the news."""
         if self.listener is not None:
-            self.listener(Progress(name, best, bound))
+            weighed = len(self.problem.cases[0].total)
+            self.listener(Progress(name, best, bound, self.scenario_count, weighed))
 
     def is_exhaustive(self, found: Found) -> bool:
         """Whether a search has looked at every answer, and every one that it passed over has no seats for certain."""

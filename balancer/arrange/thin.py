@@ -7,7 +7,7 @@ cannot set it. Rows are looked at in blocks, so that a year of minutes needs no 
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -23,6 +23,7 @@ FEW = 4000
 """Up to here every scenario is kept: leaving rows out would save nothing."""
 
 _BLOCK = 65_536
+_MEAN_WORK = 1e9
 _FIRST = 2000
 """Rows of the highest reach, on which a first good arrangement is sought."""
 
@@ -78,14 +79,38 @@ def _highest(problem: LegProblem, rows: Rows, copies: int) -> FloatMatrix:
     return np.asarray((np.abs(middle) + span).reshape(copies, -1).max(axis=0))
 
 
-def mean_neutrals(
-    installation: Installation, scenarios: Scenarios, units: tuple[Unit, ...], answers: list[Answer]
-) -> FloatMatrix:
-    """Mean neutral [A] of several answers over all scenarios, each by its worst case."""
-    taken = np.array(answers, dtype=float).T
-    total = np.zeros(len(answers))
-    for problem in blocks(installation, scenarios, units):
-        rows = problem.neutral
-        values = np.abs(rows.effects @ taken + rows.offset[:, None])
-        total += values.reshape(len(problem.cases), -1, len(answers)).max(axis=0).sum(axis=0)
-    return np.asarray(total / len(scenarios))
+@dataclass(eq=False)
+class Thinned:
+    """Very many scenarios, and those of them that are weighed: all that can carry more than `cut_a` in the neutral."""
+
+    installation: Installation
+    scenarios: Scenarios
+    units: tuple[Unit, ...]
+    cut_a: float = 0.0
+
+    def __post_init__(self) -> None:
+        self._reaches = reaches(self.installation, self.scenarios, self.units)
+
+    def heaviest(self) -> Scenarios:
+        """Scenarios of the highest reach, to find a first good arrangement on."""
+        return self.scenarios.subset(self._reaches.heaviest().tolist())
+
+    def weighed(self) -> Scenarios:
+        """Scenarios that can matter while no objective falls below the cut."""
+        return self.scenarios.subset(self._reaches.matter(self.cut_a).tolist())
+
+    @property
+    def most_means(self) -> int:
+        """Answers whose mean neutral over all scenarios can be worked out in a second or two."""
+        size = len(self.scenarios) * max(1, len(self.units))
+        return max(1, int(_MEAN_WORK / size))
+
+    def mean_neutrals(self, answers: Sequence[Answer]) -> list[float]:
+        """Mean neutral [A] of several answers over all scenarios, each by its worst case."""
+        taken = np.array(answers, dtype=float).T
+        total = np.zeros(len(answers))
+        for problem in blocks(self.installation, self.scenarios, self.units):
+            rows = problem.neutral
+            values = np.abs(rows.effects @ taken + rows.offset[:, None])
+            total += values.reshape(len(problem.cases), -1, len(answers)).max(axis=0).sum(axis=0)
+        return [float(mean) for mean in total / len(self.scenarios)]

@@ -78,8 +78,8 @@ def trade_landings(  # noqa: PLR0913 - what plan_arrangement takes, and the land
 
 
 def _point(planner: Planner, cap: int) -> TradeoffPoint:
-    stages = planner.stages()
-    result = planner.close_peaks(stages)[0]
+    stages, objectives = planner.closed()
+    result = objectives[0]
     stages.close_effort()
     seating = planner.settled(stages)
     problems = verify_arrangement(planner.installation, planner.options, seating.arrangement, seating.removed)
