@@ -66,8 +66,8 @@ def _move_text(step: Step, circuit: Circuit) -> str:
     return f"Move the {_conductor(circuit)} from {start} to {end}, {onto}."
 
 
-def _conductor(circuit: Circuit) -> str:
-    return "conductor" if circuit.poles == 1 else "two conductors"
+def _conductor(circuit: Circuit, which: str = "") -> str:
+    return f"{which}conductor" if circuit.poles == 1 else f"two {which}conductors"
 
 
 def _spare_text(step: Step, circuit: Circuit) -> str:
@@ -105,8 +105,8 @@ def _turn_text(step: Step, circuit: Circuit) -> str:
 def _new_text(step: Step, circuit: Circuit) -> str:
     breaker, end = breaker_words(circuit, step.breaker_a), space_words(step.to)
     if step.is_new_breaker:
-        return f"Fit a {breaker} at {end} and land the new {_conductor(circuit)} on it."
-    return f"Land the new {_conductor(circuit)} on the {breaker} already at {end}."
+        return f"Fit a {breaker} at {end} and land the {_conductor(circuit, 'new ')} on it."
+    return f"Land the {_conductor(circuit, 'new ')} on the {breaker} already at {end}."
 
 
 def went_along_text(carrier: str) -> str:

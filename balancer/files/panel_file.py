@@ -24,6 +24,8 @@ _MOST_CROSSING_IN = 120.0
 _COMMON_SIZES = (2, 4, 6, 8, 12, 16, 20, 24, 30, 32, 40, 42, 54, 60, 66, 72, MAX_SPACES)
 """Numbers of spaces that panels are made with (common practice, from memory)."""
 
+_SPACES_TO_CHOOSE = 4
+
 
 def read_panel_file(path: FilePath) -> Panel:
     """Read a panel file.
@@ -57,11 +59,11 @@ def ordinary_panel(highest_space: int, poles: int) -> Panel:
     """Make up the panel of an inventory without a panel file: 120/240 V, numbered across, rows alternating.
 
     It ends with the row of the highest space used; where nothing is landed it is the smallest common size that holds
-    all poles.
+    all poles and leaves a choice: a row to spare on each leg.
     """
     count = highest_space + highest_space % 2
     if not count:
-        count = next((size for size in _COMMON_SIZES if size >= poles), MAX_SPACES)
+        count = next((size for size in _COMMON_SIZES if size >= poles + _SPACES_TO_CHOOSE), MAX_SPACES)
     return Panel(spaces=ordinary_spaces(count), is_assumed=True)
 
 

@@ -1,6 +1,7 @@
 """Reasons why nothing fits: each of them is needed for the conflict, and nothing else is named."""
 
 from collections.abc import Callable
+from dataclasses import replace
 
 import pytest
 
@@ -73,3 +74,10 @@ def test_too_few_landings_name_what_must_be_mended_and_what_it_takes(installatio
     assert reasons(installation(*pair, spaces=6), Options(max_landings=0)) == [
         "at most 0 landings may change, and mending shared-neutral-one-leg (left and right) takes at least 1 landing"
     ]
+
+
+def test_the_size_of_a_panel_that_nobody_gave_is_asked_for(installation: Build, circuit: Make) -> None:
+    given = installation(circuit("c1", "1"), circuit("c2", "2"), circuit("new"), spaces=2)
+    assert "larger panel" in explain_no_seats(given, Options(), Clock()).remedies[0]
+    assumed = replace(given, panel=replace(given.panel, is_assumed=True))
+    assert "panel file" in explain_no_seats(assumed, Options(), Clock()).remedies[0]

@@ -254,3 +254,8 @@ def test_two_conductors_under_one_breaker_stay_together(work, circuit):
 def test_names_from_the_file_are_carried_as_they_are(steps, circuit):
     name = "[red]\x1b[31m=cmd"
     assert steps(circuit(name, "1"), **{name: "5"})[name].circuit == name
+
+
+def test_a_new_two_pole_circuit_brings_two_new_conductors(work, circuit):
+    plan = work(circuit("N", volts="240", breaker_a=None, breaker_type=""), N="9-11")
+    assert plan.steps[0].action == "Fit a two-pole breaker at spaces 9-11 and land the two new conductors on it."

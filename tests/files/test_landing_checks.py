@@ -125,9 +125,9 @@ def test_without_a_panel_file_the_panel_ends_at_the_highest_space(read: Read) ->
     assert any("8 spaces" in notice for notice in house.notices)
 
 
-def test_without_landings_the_panel_is_the_smallest_common_size(read: Read) -> None:
+def test_without_landings_the_panel_is_of_a_common_size_with_a_choice_of_spaces(read: Read) -> None:
     lines = "\n".join(f"c{number},{volts},5" for number, volts in enumerate([120] * 9 + [240] * 2))
-    assert len(read(f"circuit,volts,load_a\n{lines}\n").panel.spaces) == 16
+    assert len(read(f"circuit,volts,load_a\n{lines}\n").panel.spaces) == 20
 
 
 def test_more_poles_than_any_panel_holds_is_no_file_error(read: Read) -> None:

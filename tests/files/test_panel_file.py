@@ -227,7 +227,7 @@ def test_line_of_a_dotted_key_is_found(tmp_path: Path) -> None:
 
 @pytest.mark.parametrize(
     ("highest_space", "poles", "spaces"),
-    [(1, 1, 2), (7, 1, 8), (8, 30, 8), (0, 1, 2), (0, 13, 16), (0, 41, 42), (0, 84, 84), (0, 100, 84), (84, 1, 84)],
+    [(1, 1, 2), (7, 1, 8), (8, 30, 8), (0, 1, 6), (0, 12, 16), (0, 13, 20), (0, 84, 84), (0, 100, 84), (84, 1, 84)],
 )
 def test_panel_made_up_without_a_file(highest_space: int, poles: int, spaces: int) -> None:
     panel = ordinary_panel(highest_space, poles)
