@@ -129,7 +129,10 @@ class Tradeoff:
 
     points: tuple[TradeoffPoint, ...]
     flat_from: int | None
-    """Landings from which further ones buy under 0.05 A of the first objective; None where the curve still falls."""
+    """Landings from which further ones buy under 0.05 A of the first objective.
+
+    None where the curve still falls, or not every point is proven.
+    """
     stop: Stop = Stop.NONE
     refused: tuple[int, ...] = ()
     """Caps under which no arrangement fits."""

@@ -99,7 +99,9 @@ def _point(planner: Planner, cap: int) -> TradeoffPoint:
 
 
 def _flat_from(points: Sequence[TradeoffPoint], aim: Aim) -> int | None:
-    """Fewest landings from which no further one of the curve buys anything a clamp meter shows."""
+    """Fewest landings from which no further one of the curve buys anything a clamp meter shows; None if unproven."""
+    if not all(point.is_proven for point in points):
+        return None
     values = [p.peak_neutral_a if aim is Aim.NEUTRAL else p.peak_heavy_leg_a for p in points]
     if len(points) < 2 or values[-2] - values[-1] > _FLAT_A:
         return None

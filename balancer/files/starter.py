@@ -32,6 +32,9 @@ def write_files(directory: str, texts: Mapping[str, str], *, force: bool) -> tup
     OptionError
         When one of them exists and is not to be replaced, or the directory cannot be written.
     """
+    if not directory:
+        problem = "no directory is named"
+        raise OptionError(problem, "Name one; a dot stands for the one that you are in.")
     paths = {name: Path(directory) / name for name in texts}
     existing = [str(path) for path in paths.values() if path.exists()]
     if existing and not force:

@@ -176,6 +176,8 @@ def _refused_text(tradeoff: Tradeoff, cured: Sequence[Finding]) -> Iterator[str]
 
 def flat_text(tradeoff: Tradeoff) -> str:
     """Say where further landings stop paying."""
+    if tradeoff.flat_from is None and (tradeoff.stop or not all(point.is_proven for point in tradeoff.points)):
+        return "Where the curve goes flat is not known: not all of it is proven."
     if tradeoff.flat_from is None:
         return "The curve still falls at its end: further landings may buy more (--upto)."
     if tradeoff.flat_from == 0:

@@ -1,7 +1,9 @@
 import signal
+from dataclasses import replace
 
 import pytest
 
+from balancer.arrange import tradeoff
 from balancer.arrange.results import Options, Stop
 from balancer.arrange.tradeoff import trade_landings
 from balancer.electrical.scenario_sets import connected_scenarios
@@ -42,3 +44,13 @@ def test_what_was_cut_off_is_not_said_to_be_impossible(pair_on_one_leg):
 
     curve = trade_landings(pair_on_one_leg, connected_scenarios(pair_on_one_leg), Options(), caps())
     assert (curve.points, curve.refused, curve.stop) == ((), (0,), Stop.INTERRUPTED)
+
+
+@pytest.mark.parametrize(("is_proven", "flat_from"), [(True, 0), (False, None)])
+def test_a_curve_is_called_flat_only_where_that_is_proven(installation, circuit, monkeypatch, is_proven, flat_from):
+    wall = installation(circuit("X", "1"), circuit("Y", "3"))
+    point = tradeoff._point
+    monkeypatch.setattr(
+        tradeoff, "_point", lambda planner, cap: replace(point(planner, cap), is_proven=is_proven or cap == 0)
+    )
+    assert trade_landings(wall, connected_scenarios(wall), Options(), [0, 1]).flat_from == flat_from

@@ -2,6 +2,7 @@ import json
 from collections.abc import Callable
 from pathlib import Path
 
+import pytest
 from click.testing import Result
 
 Run = Callable[..., Result]
@@ -41,3 +42,10 @@ def test_a_place_that_cannot_be_written_is_said(run: Run, tmp_path: Path) -> Non
     result = run("start", tmp_path / "file" / "below")
     assert result.exit_code == 2
     assert "cannot be written" in " ".join(result.stderr.split())
+
+
+def test_a_directory_without_a_name_is_none(run: Run, tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.chdir(tmp_path)
+    assert run("start", "").exit_code == 2
+    assert list(tmp_path.iterdir()) == []
+    assert run("start", ".").exit_code == 0

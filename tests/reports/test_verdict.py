@@ -69,6 +69,11 @@ def test_flat_part_of_the_curve_is_named(flat_from: int | None, words: str) -> N
     assert words in flat_text(Tradeoff(points=(), flat_from=flat_from))
 
 
+def test_a_curve_that_was_cut_off_is_said_neither_to_fall_nor_to_be_flat() -> None:
+    text = flat_text(Tradeoff(points=(), flat_from=None, stop=Stop.TIME_LIMIT))
+    assert text == "Where the curve goes flat is not known: not all of it is proven."
+
+
 def test_verdict_of_a_first_figure_that_stays_names_what_changes(plan: Plan) -> None:
     assert plan.peaks_as_found is not None
     same = replace(plan.peaks_as_left, neutral=plan.peaks_as_found.neutral)
