@@ -10,6 +10,7 @@ from rich.console import Console
 from rich.status import Status
 
 from balancer.reports.news import planning_news
+from balancer.reports.text import crop
 
 if TYPE_CHECKING:
     from balancer.arrange.results import Progress
@@ -35,7 +36,8 @@ class ProgressLine:
     def __call__(self, news: Progress) -> None:
         """Take news from the planner, from whatever thread."""
         if self._is_shown:
-            self._status.update(planning_news(news))
+            # Beside the spinner and a blank; what wraps would be left behind when the window is made narrower.
+            self._status.update(crop(planning_news(news), self._console.width - 2).rstrip())
 
     def say_stopping(self) -> None:
         """Answer the first Ctrl-C, on a terminal or not, while there is a search to stop."""

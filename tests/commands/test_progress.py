@@ -5,7 +5,7 @@ from rich.console import Console
 
 from balancer.arrange.results import ObjectiveName, Progress
 from balancer.commands import progress
-from balancer.commands.progress import ProgressLine
+from balancer.commands.progress import STOPPING, ProgressLine
 
 NEWS = Progress(ObjectiveName.NEUTRAL, best=4.3, bound=4.1)
 
@@ -41,3 +41,25 @@ def test_quiet_and_pipes_show_nothing(monkeypatch) -> None:
             line(NEWS)
             time.sleep(0.05)
     assert stream.getvalue() == pipe.getvalue() == ""
+
+
+def test_the_progress_is_one_line_however_narrow_the_window(monkeypatch) -> None:
+    monkeypatch.setattr(progress, "PATIENCE_S", 0.01)
+    stream = io.StringIO()
+    with ProgressLine(Console(file=stream, force_terminal=True, width=40), is_quiet=False) as line:
+        line(NEWS)
+        time.sleep(0.3)
+    shown = stream.getvalue()
+    assert "peak neutral: best so far 4.3" in shown
+    # One line is taken away at a time, and the cursor never goes up.
+    assert "\x1b[1A" not in shown
+
+
+def test_stopping_is_said_while_there_is_a_search_only() -> None:
+    stream = io.StringIO()
+    line = ProgressLine(Console(file=stream), is_quiet=False)
+    line.say_stopping()
+    with line:
+        line.say_stopping()
+    line.say_stopping()
+    assert stream.getvalue() == f"{STOPPING}\n"
