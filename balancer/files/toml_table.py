@@ -73,6 +73,8 @@ class TomlTable:
     @property
     def name(self) -> str:
         """Name of the table in messages."""
+        if not self.path:
+            return "a panel file"
         return f"[{'.'.join(part for part in self.path if isinstance(part, str))}]"
 
     def number(self, key: str, most: float, *, is_zero_allowed: bool = False) -> float | None:

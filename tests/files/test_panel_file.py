@@ -266,3 +266,8 @@ def spaces_or_problems(path: Path) -> tuple[object, ...]:
         return read_panel_file(path).spaces
     except InputError as error:
         return error.problems
+
+
+def test_a_table_of_another_kind_means_nothing_in_a_panel_file(tmp_path: Path) -> None:
+    (only,) = problems_of(tmp_path, "[panel]\nspaces = 2\n\n[other]\n")
+    assert (only.line, only.problem) == (4, "means nothing in a panel file")
