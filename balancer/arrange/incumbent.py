@@ -18,10 +18,10 @@ from balancer.arrange.search import Cap
 
 _SEED = 20
 _CHAINS = 48
-_STEPS_A_CHOICE = 100
+_STEPS_A_CHOICE = 30
 _STEPS_A_CHOICE_AGAIN = 400
 _MANY_CHOICES = 32
-_MOST_ROWS = 400
+_MOST_ROWS = 250
 _WARM = 0.33
 _COLD = 0.017
 """First and last temperature, as shares of a typical current in a row."""
