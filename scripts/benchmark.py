@@ -23,6 +23,8 @@ import numpy as np
 from demo import HOUSE
 from environment import ROOT
 
+from balancer.electrical.defaults import known_uses
+from balancer.electrical.profiles import HOURS, Season, shipped_profiles
 from balancer.electrical.scenario_sets import share_scenarios
 from balancer.electrical.scenarios import Scenarios
 from balancer.panel import Circuit, Installation, Load, Panel, PowerFactor, Terminal, Volts, ordinary_spaces
@@ -90,8 +92,12 @@ def measure_tradeoff(runs: int) -> Iterator[Timing]:
     yield Timing("`balancer tradeoff`, 0 to 10 landings, crowded house", seconds, 15.0, remark, is_proven)
 
 
-def build_large_panel(seed: int) -> tuple[Installation, Scenarios]:
-    """Land 48 free single-pole circuits of mixed power factor at random in 60 spaces, with 48 random scenarios."""
+def build_large_panel(seed: int, *, is_random: bool = False) -> tuple[Installation, Scenarios]:
+    """Land 48 free single-pole circuits of mixed power factor at random in 60 spaces, with 48 scenarios.
+
+    Every circuit has a use, and the scenarios are the hours of a summer and a winter day, each share scattered by a
+    fifth; with `is_random` every circuit is on in half the scenarios at a random share, which no house is.
+    """
     chance = np.random.default_rng(seed)
     spaces = chance.permutation(np.arange(1, SPACES + 1))[:CIRCUITS]
     circuits = tuple(
@@ -104,37 +110,55 @@ def build_large_panel(seed: int) -> tuple[Installation, Scenarios]:
                 neutral_a=int(chance.integers(10, 161)) / 10,
                 neutral_pf=PowerFactor(float(chance.choice(POWER_FACTORS))),
             ),
+            use=str(chance.choice(known_uses())),
         )
         for number, space in enumerate(spaces, start=1)
     )
-    is_on = chance.random((SCENARIOS, CIRCUITS)) < 0.5
-    shares = is_on * chance.choice(SHARES, (SCENARIOS, CIRCUITS))
+    if is_random:
+        is_on = chance.random((SCENARIOS, CIRCUITS)) < 0.5
+        shares = is_on * chance.choice(SHARES, (SCENARIOS, CIRCUITS))
+    else:
+        hours = [(season, hour) for season in Season for hour in HOURS]
+        profiles = shipped_profiles()
+        shares = np.array([[profiles.share(c.use, season, hour) for c in circuits] for season, hour in hours])
+        shares = shares * chance.uniform(0.8, 1.2, shares.shape)
     installation = Installation(panel=Panel(spaces=ordinary_spaces(SPACES)), circuits=circuits)
     return installation, share_scenarios(installation, [f"s{row}" for row in range(1, SCENARIOS + 1)], shares)
 
 
-def solve_large_panel(seed: int) -> tuple[float, float, float]:
+def solve_large_panel(seed: int, is_random: bool) -> tuple[float, float, float]:
     """Wall time [s], lowest peak neutral [A] and its proven bound [A] of one seeded panel, imports included."""
     began = time.perf_counter()
     from balancer.arrange.clock import Clock
     from balancer.arrange.plan import Planner
     from balancer.arrange.results import ObjectiveName, Options
 
-    stages = Planner(*build_large_panel(seed), Options(), Clock(GIVEN_UP_AFTER_S)).stages()
+    stages = Planner(*build_large_panel(seed, is_random=is_random), Options(), Clock(GIVEN_UP_AFTER_S)).stages()
     first = stages.close_peak(ObjectiveName.NEUTRAL)
     return time.perf_counter() - began, first.value, first.bound
 
 
 def measure_large_panels(runs: int) -> Iterator[Timing]:
-    """Time the proof of the lowest peak neutral on every seeded panel, once each, whatever `runs` says."""
+    """Time the proof of the lowest peak neutral on ten seeded panels, once each, whatever `runs` says."""
     del runs
+    yield from _large_panels(is_random=False, limit_s=30.0)
+
+
+def measure_random_panels(runs: int) -> Iterator[Timing]:
+    """Time the same with random scenarios, harder than any house; only to show where the limits are."""
+    del runs
+    yield from _large_panels(is_random=True, limit_s=GIVEN_UP_AFTER_S)
+
+
+def _large_panels(*, is_random: bool, limit_s: float) -> Iterator[Timing]:
+    kind = "random scenarios" if is_random else "hours"
     for seed in range(1, SEEDS + 1):
         alone = multiprocessing.get_context("spawn")
         with concurrent.futures.ProcessPoolExecutor(1, mp_context=alone) as process:
-            seconds, value_a, bound_a = process.submit(solve_large_panel, seed).result()
+            seconds, value_a, bound_a = process.submit(solve_large_panel, seed, is_random).result()
         remark = f"{value_a:.3f} A, at most {value_a - bound_a:.3f} A above the best possible"
-        name = f"{SPACES} spaces, {CIRCUITS} circuits, {SCENARIOS} scenarios, seed {seed}"
-        yield Timing(name, seconds, 30.0, remark, value_a - bound_a <= 0.05)
+        name = f"{SPACES} spaces, {CIRCUITS} circuits, {SCENARIOS} {kind}, seed {seed}"
+        yield Timing(name, seconds, limit_s, remark, value_a - bound_a <= 0.05 + 1e-9)
 
 
 MEASUREMENTS: dict[str, Callable[[int], Iterator[Timing]]] = {
@@ -142,13 +166,16 @@ MEASUREMENTS: dict[str, Callable[[int], Iterator[Timing]]] = {
     "plan": measure_plan,
     "tradeoff": measure_tradeoff,
     "large": measure_large_panels,
+    "random": measure_random_panels,
 }
 
 
 def main() -> int:
     """Print the table line by line; the exit code is 1 where a target is missed."""
     parser = argparse.ArgumentParser(description=__doc__)
-    parser.add_argument("--only", choices=MEASUREMENTS, nargs="+", default=list(MEASUREMENTS), help="what to measure")
+    parser.add_argument(
+        "--only", choices=MEASUREMENTS, nargs="+", default=["help", "plan", "tradeoff", "large"], help="what to measure"
+    )
     parser.add_argument("--runs", type=int, default=5, help="runs behind each median (default 5)")
     options = parser.parse_args()
     print(f"{platform.system()} {platform.machine()}, {os.cpu_count()} cores, Python {platform.python_version()}\n")
