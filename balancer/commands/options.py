@@ -92,6 +92,17 @@ class Amount(click.ParamType[float]):
         return number
 
 
+class Count(click.IntRange):
+    """A whole number from `min` to `max`, refused in the same words as an `Amount`."""
+
+    def convert(self, value: Any, param: click.Parameter | None, ctx: click.Context | None) -> int:
+        """Read the number, or say what is allowed."""
+        try:
+            return int(super().convert(value, param, ctx))
+        except click.BadParameter:
+            self.fail(f"{value!r} is not a whole number from {self.min} to {self.max}.", param, ctx)
+
+
 def _bundle(name: str, kind: type, *decorators: Callable[[Any], Any]) -> Callable[[Function], Function]:
     """Decorate a command so that these options arrive as one argument `name` of type `kind`."""
 
@@ -149,7 +160,7 @@ def landing_options() -> Callable[[Function], Function]:
         click.option(
             "--landings",
             "max_landings",
-            type=click.IntRange(min=0, max=MOST_LANDINGS),
+            type=Count(min=0, max=MOST_LANDINGS),
             metavar="N",
             help="Change at most N landings.",
         ),

@@ -9,6 +9,7 @@ from balancer.commands.failures import INTERRUPTED
 from balancer.commands.interrupts import StopRequest
 from balancer.commands.options import (
     MOST_LANDINGS,
+    Count,
     InputFiles,
     LandingWishes,
     Output,
@@ -31,7 +32,7 @@ from balancer.commands.options import (
 @planning_options()
 @click.option(
     "--upto",
-    type=click.IntRange(min=0, max=MOST_LANDINGS),
+    type=Count(min=0, max=MOST_LANDINGS),
     metavar="N",
     default=10,
     show_default=True,

@@ -135,3 +135,13 @@ def test_a_curve_without_a_point_is_no_answer(run: Run, house: Path) -> None:
     result = run("tradeoff", house, "--time-limit", "0.000001", "--json")
     assert result.exit_code == 3
     assert json.loads(result.stdout)["error"] == "The limit was reached before any arrangement was found"
+
+
+@pytest.mark.parametrize("value", ["1.5", "-1", "169", "many", "1e2"])
+@pytest.mark.parametrize(("command", "option"), [("plan", "--landings"), ("tradeoff", "--upto")])
+def test_a_number_of_landings_that_is_none_is_told_what_is_allowed(
+    run: Run, house: Path, command: str, option: str, value: str
+) -> None:
+    result = run(command, house, option, value)
+    assert result.exit_code == 2
+    assert f"'{value}' is not a whole number from 0 to 168." in " ".join(result.stderr.split())
