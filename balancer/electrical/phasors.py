@@ -24,6 +24,8 @@ ComplexArray = NDArray[np.complexfloating]
 MOST_UNKNOWN = 6
 """Parts of unknown pole up to which every combination is looked at, for the difference of the legs."""
 
+_BLOCK = 65_536
+
 
 @dataclass(frozen=True, eq=False)
 class LegCurrents:
@@ -134,7 +136,7 @@ class PanelCurrents:
         columns = (self.scenarios.neutral_a[:, c] for c in np.nonzero(unknown)[0])
         parts = [column for column in columns if column.any()]
         if only_extreme or len(parts) > MOST_UNKNOWN:
-            parts = [np.sum(parts, axis=0)] if parts else []
+            parts = [np.sum(parts, axis=0, dtype=float)] if parts else []
         for signs in itertools.product((1.0, -1.0), repeat=len(parts)):
             shift = np.zeros(len(self.scenarios))
             for sign, part in zip(signs, parts, strict=True):
@@ -177,10 +179,14 @@ class PanelCurrents:
 
 
 def _phasor_sum(magnitudes: FloatArray, unit_phasors: ComplexArray) -> ComplexArray:
-    # Two real products instead of one complex matrix keep a year of readings in memory.
-    real = magnitudes @ unit_phasors.real.astype(magnitudes.dtype)
-    imaginary = magnitudes @ unit_phasors.imag.astype(magnitudes.dtype)
-    return np.asarray(real + 1j * imaginary)
+    # Readings are in single precision, whose sums depend on their order by more than re-checks allow for; block by
+    # block, a year of them needs no copy in double precision.
+    parts = np.stack([unit_phasors.real, unit_phasors.imag], axis=1)
+    total = np.empty(len(magnitudes), dtype=complex)
+    for start in range(0, len(magnitudes), _BLOCK):
+        block = magnitudes[start : start + _BLOCK].astype(float, copy=False) @ parts
+        total[start : start + _BLOCK] = block[:, 0] + 1j * block[:, 1]
+    return total
 
 
 def _peak(values: FloatArray) -> Peak:
