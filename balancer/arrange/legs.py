@@ -104,10 +104,10 @@ class LegProblem:
         parts = []
         for case in self.cases:
             magnitude = np.abs(case.total)
-            running = magnitude > _NO_CURRENT_A
-            direction = np.conj(case.total[running] / magnitude[running])
-            offset = (case.difference[running] * direction).real
-            effects = (case.effects[running] * direction[:, None]).real
+            # Where nothing runs there is no direction, and no imbalance.
+            direction = np.conj(case.total / np.where(magnitude > _NO_CURRENT_A, magnitude, np.inf))
+            offset = (case.difference * direction).real
+            effects = (case.effects * direction[:, None]).real
             parts.append((offset.astype(complex), effects.astype(complex)))
         return _stacked(ObjectiveName.IMBALANCE, parts, is_real=True)
 

@@ -128,7 +128,7 @@ class Planner:
         return self._currents.peaks(self.start).neutral.value_a
 
     def _cut(self, level_a: float) -> None:
-        """Weigh only the scenarios that can carry more than a level in the neutral, or set the heavy leg's peak."""
+        """Weigh only the scenarios whose neutral or imbalance can be above a level, or that can set the heavy leg's."""
         assert self._thinned is not None, "only very many scenarios are cut"
         self._thinned.cut_a = level_a
         self._weigh(self._thinned.weighed(), self._thinned.units)
@@ -255,10 +255,19 @@ class Planner:
             stages = self.stages()
             objectives = self._close_peaks(stages)
             lowest = min((o.value for o in objectives if o.name is not ObjectiveName.HEAVY_LEG), default=0.0)
-            if self._thinned is None or lowest >= self._thinned.cut_a or self.clock.is_stopped:
+            if self._thinned is None or lowest >= self._thinned.cut_a:
                 return stages, objectives
+            if self.clock.is_stopped:
+                return stages, [self._with_left_out(result) for result in objectives]
             self.start = self.settled(stages).arrangement
             self._cut(_CUT_SHARE * lowest)
+
+    def _with_left_out(self, result: ObjectiveResult) -> ObjectiveResult:
+        """Say of a peak only what holds with the scenarios that were left out: they carry at most the cut."""
+        if self._thinned is None or result.name is ObjectiveName.HEAVY_LEG or result.value >= self._thinned.cut_a:
+            return result
+        is_proven = self._thinned.cut_a - result.bound <= READINGS_TOLERANCE_A
+        return replace(result, value=self._thinned.cut_a, is_proven=is_proven)
 
     def _close_peaks(self, stages: Stages) -> list[ObjectiveResult]:
         """Close the amps objectives in the order of the aim, each held while the next is lowered."""
@@ -274,7 +283,11 @@ class Planner:
     def _free_neutral(self, stages: Stages) -> ObjectiveResult:
         """Lowest peak neutral with nothing else asked: what the report's bound speaks of when the legs come first."""
         alone = replace(stages, caps=list(self._caps), counters=list(self._counters))
-        return alone.close_peak(ObjectiveName.NEUTRAL)
+        result = alone.close_peak(ObjectiveName.NEUTRAL)
+        while self._thinned is not None and result.value < self._thinned.cut_a and not self.clock.is_stopped:
+            self._cut(_CUT_SHARE * result.value)
+            result = self.stages().close_peak(ObjectiveName.NEUTRAL)
+        return self._with_left_out(result)
 
     def _plan(self, stages: Stages, objectives: list[ObjectiveResult], neutral: ObjectiveResult) -> Plan:
         seating = self.settled(stages)

@@ -17,9 +17,9 @@ from balancer.arrange.choices import Answer
 from balancer.arrange.legs import FloatMatrix, LegProblem, Rows, build_leg_problem
 from balancer.arrange.placements import Unit
 from balancer.electrical.scenarios import Scenarios
-from balancer.panel import Installation
+from balancer.panel import Installation, SupplySystem
 
-FEW = 4000
+FEW = 500
 """Up to here every scenario is kept: leaving rows out would save nothing."""
 
 _BLOCK = 65_536
@@ -36,12 +36,14 @@ class Reaches:
     """
 
     neutral: FloatMatrix
+    imbalance: FloatMatrix
     heavy_leg: FloatMatrix
     least_heavy_a: float
 
-    def matter(self, neutral_above_a: float) -> NDArray[np.intp]:
-        """Scenarios that can carry more than a level in the neutral, or set the heavy leg's peak."""
-        return np.flatnonzero((self.neutral > neutral_above_a) | (self.heavy_leg > self.least_heavy_a))
+    def matter(self, above_a: float) -> NDArray[np.intp]:
+        """Scenarios whose neutral or imbalance can be above a level, or that can set the heavy leg's peak."""
+        is_above = (self.neutral > above_a) | (self.imbalance > above_a)
+        return np.flatnonzero(is_above | (self.heavy_leg > self.least_heavy_a))
 
     def heaviest(self) -> NDArray[np.intp]:
         """Scenarios of the highest reach, in order of time."""
@@ -57,13 +59,16 @@ def blocks(installation: Installation, scenarios: Scenarios, units: tuple[Unit, 
 
 def reaches(installation: Installation, scenarios: Scenarios, units: tuple[Unit, ...]) -> Reaches:
     """Find the highest possible value of each quantity in every scenario."""
-    neutral, heavy, least = [], [], 0.0
+    # Half a turn apart the neutral carries the legs' difference, and no projection of that is larger.
+    is_split = installation.panel.supply.system is SupplySystem.SPLIT
+    neutral, imbalance, heavy, least = [], [], [], 0.0
     for problem in blocks(installation, scenarios, units):
         cases = len(problem.cases)
         neutral.append(_highest(problem, problem.neutral, cases))
+        imbalance.append(neutral[-1] if is_split else _highest(problem, problem.imbalance, cases))
         heavy.append(_highest(problem, problem.heavy_leg, 2 * cases))
         least = max(least, max(float(np.abs(case.total).max(initial=0.0)) for case in problem.cases) / 2.0)
-    return Reaches(np.concatenate(neutral), np.concatenate(heavy), least)
+    return Reaches(np.concatenate(neutral), np.concatenate(imbalance), np.concatenate(heavy), least)
 
 
 def _highest(problem: LegProblem, rows: Rows, copies: int) -> FloatMatrix:
@@ -81,7 +86,7 @@ def _highest(problem: LegProblem, rows: Rows, copies: int) -> FloatMatrix:
 
 @dataclass(eq=False)
 class Thinned:
-    """Very many scenarios, and those of them that are weighed: all that can carry more than `cut_a` in the neutral."""
+    """Very many scenarios, and those of them that are weighed: all whose neutral or imbalance can be above `cut_a`."""
 
     installation: Installation
     scenarios: Scenarios
