@@ -1,20 +1,15 @@
-"""Leg and neutral currents of random panels against a general-purpose power-flow program, to a milliampere.
-
-The service is ideal: one stiff source a leg, and reactors of next to no impedance that stand for the clamp meter.
-"""
+"""Leg and neutral currents of random panels against a general-purpose power-flow program, to a milliampere."""
 
 import random
-from collections.abc import Sequence
-from dataclasses import dataclass, replace
+from dataclasses import replace
 
 import pytest
-from dss import DSS
+from electrical.power_flow import Service, circuit_commands, power_flow, service_commands
 
 from balancer.electrical.phasors import PanelCurrents
 from balancer.electrical.scenario_sets import connected_scenarios
 from balancer.panel import (
     Circuit,
-    Installation,
     Leg,
     Load,
     Pole,
@@ -26,16 +21,6 @@ from balancer.panel import (
 )
 
 PANELS_PER_SUPPLY = 12
-NODE = {Leg.A: 1, Leg.B: 2}
-
-
-@dataclass(frozen=True)
-class Service:
-    """A supply, the angle of its leg B and its voltage from leg to leg; None where there is none."""
-
-    supply: Supply
-    leg_b_deg: float
-    line_kv: float | None
 
 
 WYE_KV = 0.12 * 3**0.5
@@ -62,53 +47,6 @@ def random_circuit(chance: random.Random, label: str, row: int, has_line_loads: 
     pole = chance.choice(list(Pole))
     load = Load(neutral_a=amps[0], neutral_pf=pf[0], neutral_pole=pole, line_a=amps[1], line_pf=pf[1])
     return Circuit(label=label, volts=kind, load=load, landing=pair)
-
-
-def load_command(name: str, nodes: str, kv: float, amps: float, pf: PowerFactor) -> str:
-    reactive = (1.0 - pf.value**2) ** 0.5 * (-1.0 if pf.is_leading else 1.0)
-    kva = kv * amps
-    power = f"kw={kva * pf.value!r} kvar={kva * reactive!r}"
-    return f"new load.{name} phases=1 bus1=panel.{nodes} kv={kv!r} model=1 vminpu=0.5 vmaxpu=1.5 {power}"
-
-
-def service_commands(service: Service) -> list[str]:
-    stiff = "basekv=0.12 phases=1 pu=1 r1=1e-9 x1=1e-9 r0=1e-9 x0=1e-9"
-    return [
-        "clear",
-        f"new circuit.service bus1=source.1.0 angle=0 {stiff}",
-        f"new vsource.second bus1=source.2.0 angle={service.leg_b_deg} {stiff}",
-        "new reactor.leg_a phases=1 bus1=source.1 bus2=panel.1 r=1e-7 x=0",
-        "new reactor.leg_b phases=1 bus1=source.2 bus2=panel.2 r=1e-7 x=0",
-        "new reactor.neutral phases=1 bus1=panel.3 bus2=source.0 r=1e-7 x=0",
-    ]
-
-
-def circuit_commands(installation: Installation, line_kv: float | None) -> list[str]:
-    commands = []
-    for circuit in installation.circuits:
-        nodes = [NODE[installation.panel.leg(terminal.space)] for terminal in circuit.landing]
-        load = circuit.load
-        if load.neutral_a:
-            hot = nodes[1] if load.neutral_pole is Pole.SECOND else nodes[0]
-            commands.append(load_command(f"{circuit.label}_n", f"{hot}.3", 0.12, load.neutral_a, load.neutral_pf))
-        if load.line_a:
-            assert line_kv is not None
-            commands.append(load_command(f"{circuit.label}_l", "1.2", line_kv, load.line_a, load.line_pf))
-    return commands
-
-
-def power_flow(commands: Sequence[str]) -> list[float]:
-    """Magnitudes [A] through the three reactors."""
-    for command in (*commands, "set tolerance=1e-10 maxiterations=500", "solve"):
-        DSS.Text.Command = command
-    circuit = DSS.ActiveCircuit
-    assert circuit.Solution.Converged
-    magnitudes = []
-    for name in ("leg_a", "leg_b", "neutral"):
-        circuit.SetActiveElement(f"reactor.{name}")
-        real, imaginary, *_ = circuit.ActiveCktElement.Currents
-        magnitudes.append(abs(complex(real, imaginary)))
-    return magnitudes
 
 
 @pytest.mark.parametrize("service", SERVICES)

@@ -9,8 +9,9 @@ from oracles.made_up_panels import SUPPLIES, plain_installation, small_installat
 from oracles.readings_logs import dense_log, plain_panel, readings
 
 from balancer.arrange.plan import Planner, plan_arrangement
-from balancer.arrange.results import Aim, ObjectiveName, Options, Plan
+from balancer.arrange.results import Aim, ObjectiveName, ObjectiveResult, Options, Plan, Stop
 from balancer.arrange.seats import build_units
+from balancer.arrange.stages import Stages
 from balancer.arrange.thin import reaches
 from balancer.electrical.scenarios import Scenarios
 from balancer.errors import InfeasibleError
@@ -18,6 +19,9 @@ from balancer.panel import Installation, Supply, SupplySystem
 
 VALUE = 2e-4
 """Amps that two searches for one optimum may differ by."""
+
+NOTHING_FITS = (1201, 1204, 1207, 1208, 1213, 1221, 1230, 1231)
+"""Seeds of panels that are too full for every arrangement."""
 
 
 def random_log(seed: int, installation: Installation, rows: int) -> Scenarios:
@@ -38,14 +42,12 @@ def outcome(installation: Installation, scenarios: Scenarios, options: Options) 
         return None
 
 
-@pytest.mark.parametrize("seed", range(1200, 1240))
+@pytest.mark.parametrize("seed", [seed for seed in range(1200, 1240) if seed not in NOTHING_FITS])
 def test_reach_is_never_below_the_highest_of_all_answers(seed: int) -> None:
     installation, options = small_installation(seed), some_options(seed)
     scenarios = random_log(seed, installation, 6)
     signs = np.array(list(enumerate_arrangements(installation, options).cheapest), dtype=np.int8)
     units = tuple(unit for unit in build_units(installation, options) if unit.placements)
-    if not len(signs):
-        pytest.skip("nothing fits")
     found = reaches(installation, scenarios, units)
     for row in range(len(scenarios)):
         values = figures(installation, scenarios.subset([row]), signs)
@@ -80,7 +82,7 @@ def assert_same(whole: Plan | None, thinned: Plan | None) -> None:
     assert whole.landings_changed == thinned.landings_changed
 
 
-@pytest.fixture(params=[1.0, 5.0], ids=["first peak as it is", "first peak far too high"])
+@pytest.fixture(params=[1.0, 2.0, 5.0], ids=["first peak as it is", "twice", "five times"])
 def first_peak_times(request: pytest.FixtureRequest, monkeypatch: pytest.MonkeyPatch) -> float:
     """How far off the first good arrangement is: the higher its peak, the more intervals are left out at first."""
     factor, first_peak = float(request.param), Planner._first_peak
@@ -99,7 +101,7 @@ def assert_thinning_changes_nothing(
 
 
 @pytest.mark.usefixtures("first_peak_times")
-@pytest.mark.parametrize("seed", range(1300, 1340))
+@pytest.mark.parametrize("seed", range(1300, 1325))
 def test_plan_is_the_same_with_and_without_the_intervals_left_out(seed: int, monkeypatch: pytest.MonkeyPatch) -> None:
     installation, options = small_installation(seed), some_options(seed)
     assert_thinning_changes_nothing(installation, random_log(seed, installation, 300), options, monkeypatch)
@@ -146,3 +148,24 @@ def test_imbalance_is_right_where_export_hides_it_from_the_neutral(monkeypatch: 
     plan = plan_arrangement(replace(installation, panel=in_phase), log, Options(within_a=0.0))
     by_name = {result.name: result.value for result in plan.objectives}
     assert by_name[ObjectiveName.IMBALANCE] == pytest.approx(13.9, abs=VALUE)
+
+
+def test_what_is_told_after_an_interruption_holds_in_the_intervals_left_out_too(
+    monkeypatch: pytest.MonkeyPatch,
+) -> None:
+    """Stopped with too much left out, planning tells no peak that an interval left out exceeds."""
+    monkeypatch.setattr("balancer.arrange.plan.FEW", 0)
+    first_peak, close_peaks = Planner._first_peak, Planner._close_peaks
+    monkeypatch.setattr(Planner, "_first_peak", lambda planner: 3.0 * first_peak(planner))
+
+    def interrupted(planner: Planner, stages: Stages) -> list[ObjectiveResult]:
+        results = close_peaks(planner, stages)
+        planner.clock._is_interrupted = True
+        return results
+
+    monkeypatch.setattr(Planner, "_close_peaks", interrupted)
+    installation, scenarios = dense_log(2, 8, 200)
+    plan = plan_arrangement(installation, scenarios, Options(within_a=0.0))
+    assert plan.stop is Stop.INTERRUPTED
+    assert not plan.is_proven
+    assert plan.peaks_as_left.neutral.value_a <= plan.objectives[0].value + VALUE
