@@ -12,6 +12,7 @@ from balancer.arrange.results import ObjectiveName, ObjectiveResult
 from balancer.arrange.search import STEP_A, Budget, LegSearch
 from balancer.arrange.solve import SolveStatus
 from balancer.arrange.state import State
+from balancer.arrange.subset_sums import least_peak
 
 _ROUNDS = ((1e11, 4.0), (4e11, 15.0), (2e12, 60.0))
 """Search and solver take turns, at first with a few seconds each: which of them is quick differs from panel to panel.
@@ -40,9 +41,11 @@ def close_peak(state: State, name: ObjectiveName) -> ObjectiveResult:
     task = _PeakTask(state, rows)
     task.begin()
     for search_work, decision_work_s in _ROUNDS:
+        if state.clock.is_stopped or task.is_exact:
+            break
         task.search(search_work)
         task.decide(decision_work_s)
-        if state.clock.is_stopped or task.is_closed:
+        if task.is_closed:
             break
     state.answer = task.answer
     return ObjectiveResult(
@@ -75,6 +78,11 @@ class _PeakTask:
         """Whether the value is within the tolerance of the bound."""
         return self.value - self.bound <= self.state.tolerance_a + _ROUNDING_A
 
+    @property
+    def is_exact(self) -> bool:
+        """Whether nothing better by more than a search's step can exist."""
+        return self.value - self.bound <= STEP_A
+
     def _prove(self, bound: float, proved_by: str) -> None:
         if bound > self.bound:
             self.bound, self.proved_by = bound, proved_by
@@ -92,6 +100,7 @@ class _PeakTask:
             if self._seated(answer):
                 self.answer, self.value = answer, value
                 break
+        self._prove(least_peak(state.problem, self.rows), "arithmetic")
         state.report(self.rows.name, self.value, 0.0)
 
     def _heuristic(self) -> Heuristic:
