@@ -7,9 +7,7 @@ has a process of its own, so imports count.
 from __future__ import annotations
 
 import argparse
-import concurrent.futures
 import json
-import multiprocessing
 import os
 import platform
 import statistics
@@ -18,8 +16,10 @@ import sys
 import time
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass
+from functools import partial
 
 import numpy as np
+from benchmark_readings import Wanted, in_fresh_process, print_readings
 from demo import HOUSE
 from environment import ROOT
 
@@ -153,9 +153,7 @@ def measure_random_panels(runs: int) -> Iterator[Timing]:
 def _large_panels(*, is_random: bool, limit_s: float) -> Iterator[Timing]:
     kind = "random scenarios" if is_random else "hours"
     for seed in range(1, SEEDS + 1):
-        alone = multiprocessing.get_context("spawn")
-        with concurrent.futures.ProcessPoolExecutor(1, mp_context=alone) as process:
-            seconds, value_a, bound_a = process.submit(solve_large_panel, seed, is_random).result()
+        seconds, value_a, bound_a = in_fresh_process(partial(solve_large_panel, seed, is_random))
         remark = f"{value_a:.3f} A, at most {value_a - bound_a:.3f} A above the best possible"
         name = f"{SPACES} spaces, {CIRCUITS} circuits, {SCENARIOS} {kind}, seed {seed}"
         yield Timing(name, seconds, limit_s, remark, value_a - bound_a <= 0.05 + 1e-9)
@@ -168,27 +166,45 @@ MEASUREMENTS: dict[str, Callable[[int], Iterator[Timing]]] = {
     "large": measure_large_panels,
     "random": measure_random_panels,
 }
+READINGS = "readings"
 
 
-def main() -> int:
-    """Print the table line by line; the exit code is 1 where a target is missed."""
-    parser = argparse.ArgumentParser(description=__doc__)
-    parser.add_argument(
-        "--only", choices=MEASUREMENTS, nargs="+", default=["help", "plan", "tradeoff", "large"], help="what to measure"
-    )
-    parser.add_argument("--runs", type=int, default=5, help="runs behind each median (default 5)")
-    options = parser.parse_args()
-    print(f"{platform.system()} {platform.machine()}, {os.cpu_count()} cores, Python {platform.python_version()}\n")
+def print_timings(names: list[str], runs: int) -> list[str]:
+    """Print what is measured against a target as one table, line by line; gives what missed it."""
     print("| what | time | target | verdict | remark |\n|---|---|---|---|---|")
-    verdicts = []
-    for name in options.only:
-        for timing in MEASUREMENTS[name](options.runs):
+    missed = []
+    for name in names:
+        for timing in MEASUREMENTS[name](runs):
             cells = (
                 f"{timing.name} | {timing.seconds:.2f} s | {timing.limit_s:g} s | {timing.verdict} | {timing.remark}"
             )
             print(f"| {cells} |", flush=True)
-            verdicts.append(timing.verdict)
-    return 1 if "MISSED" in verdicts else 0
+            missed += [timing.name] if timing.verdict == "MISSED" else []
+    return missed
+
+
+def parse_options() -> argparse.Namespace:
+    """Read the command line."""
+    parser = argparse.ArgumentParser(description=__doc__)
+    parts = [*MEASUREMENTS, READINGS]
+    usual = [part for part in parts if part != "random"]
+    parser.add_argument("--only", choices=parts, nargs="+", default=usual, help="what to measure")
+    parser.add_argument("--runs", type=int, default=5, help="runs behind each median (default 5)")
+    parser.add_argument("--cases", default="", help="of the readings: logs whose name this pattern finds, or growth")
+    parser.add_argument("--all-rivals", action="store_true", help="put every log to CP-SAT and HiGHS as well: hours")
+    parser.add_argument("--rival-limit", type=float, default=150.0, help="seconds that each of them has (default 150)")
+    return parser.parse_args()
+
+
+def main() -> int:
+    """Print the tables; the exit code is 1 where a target is missed."""
+    options = parse_options()
+    print(f"{platform.system()} {platform.machine()}, {os.cpu_count()} cores, Python {platform.python_version()}\n")
+    timed = [name for name in options.only if name in MEASUREMENTS]
+    missed = print_timings(timed, options.runs) if timed else []
+    if READINGS in options.only:
+        missed += print_readings(Wanted(options.cases, options.all_rivals, options.rival_limit))
+    return 1 if missed else 0
 
 
 if __name__ == "__main__":

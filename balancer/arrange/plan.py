@@ -243,7 +243,7 @@ class Planner:
         """Close every objective in turn and settle the seats."""
         stages, objectives = self.closed()
         objectives += [stages.close_effort(), stages.close_mean()]
-        neutral = objectives[0] if self.options.aim is Aim.NEUTRAL else self._free_neutral(stages)
+        neutral = objectives[0] if self.options.aim is Aim.NEUTRAL else self.free_neutral(stages)
         return self._plan(stages, objectives, neutral)
 
     def closed(self) -> tuple[Stages, list[ObjectiveResult]]:
@@ -280,7 +280,7 @@ class Planner:
             stages.hold(name, result.value + self.options.within_a)
         return objectives
 
-    def _free_neutral(self, stages: Stages) -> ObjectiveResult:
+    def free_neutral(self, stages: Stages) -> ObjectiveResult:
         """Lowest peak neutral with nothing else asked: what the report's bound speaks of when the legs come first."""
         alone = replace(stages, caps=list(self._caps), counters=list(self._counters))
         result = alone.close_peak(ObjectiveName.NEUTRAL)
